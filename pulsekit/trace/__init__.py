@@ -1,0 +1,5 @@
+"""From a recording to cycles to harmonics."""
+
+from .harmonics import Harmonics
+
+__all__ = ["Harmonics"]
