@@ -34,7 +34,7 @@ class Finding:
     unit: str
     low: float | None = None
     high: float | None = None
-    shares: Mapping[str, float] = field(default=_NO_SHARES, hash=False)
+    shares: Mapping[str, float] = field(default_factory=lambda: _NO_SHARES, hash=False)
     reliance: str = "usable"
     because: str = ""
     shown_value: float | None = None
