@@ -93,7 +93,7 @@ _WORDS = MappingProxyType(
         "Psi": "psi", "RPM": "rpm", "Rpm": "rpm", "MMHG": "mmHg", "mmhg": "mmHg", "mmHG": "mmHg", "MmHg": "mmHg", "CMH2O": "cmH2O", "cmh2o": "cmH2O",
         "cmH20": "cmH2O", "KPA": "kPa", "kpa": "kPa", "Kpa": "kPa", "KPa": "kPa", "pa": "Pa", "PA": "Pa", "mpa": "MPa", "hz": "Hz", "HZ": "Hz",
         "LPM": "lpm", "GPM": "gpm", "usgpm": "gpm", "USgpm": "gpm", "l/min": "L/min", "r/min": "rpm", "rev/min": "rpm", "1/min": "rpm", "min^-1": "rpm",
-        "degc": "degC", "degf": "degF", "dyn": "dyne", "dynes": "dyne", "ML": "mL", "KHz": "kHz", "khz": "kHz", "kgf": "kilogram_force",
+        "degc": "degC", "degf": "degF", "dyn": "dyne", "dynes": "dyne", "ML": "mL", "KHz": "kHz", "khz": "kHz", "Pas": "Pa*s", "mPas": "mPa*s", "kgf": "kilogram_force",
     }
 )  # fmt: skip
 _GAUGE = re.compile(r"^(?P<unit>[A-Za-z0-9]+?)\s*\(\s*(?P<kind>[ga]|abs|gauge|absolute)\s*\)$", re.IGNORECASE)
@@ -144,10 +144,25 @@ class Given:
         return self.value
 
 
+# Products, powers and blanks as people write them: 'm3/h', 'mL min-1', 'cm.s-1', 'L per min', 'mm Hg', 'bar a'.
+_FORMS = (
+    (re.compile(r"\bmm\s+Hg\b", re.IGNORECASE), "mmHg"),
+    (re.compile(r"\b([cm])m\s+H2O\b"), r"\1mH2O"),
+    (re.compile(r"\b(bar|psi|kPa|MPa|mbar|Pa)[\s_]+(?:a|abs|absolute)\.?$"), r"\1(a)"),
+    (re.compile(r"\b(bar|psi|kPa|MPa|mbar|Pa)[\s_]+(?:g|gauge)\.?$"), r"\1(g)"),
+    (re.compile(r"\s+per\s+"), "/"),
+    (re.compile(r"(?<![A-Za-z0-9^])(m|cm|mm|dm|um|µm|μm|ft|in|s|min|h|sec|L|l|ml|mL)(-?[1-4])(?![A-Za-z0-9])"), r"\1^\2"),
+    (re.compile(r"(?<=[A-Za-z0-9])\s*[.∙•]\s*(?=[A-Za-zµμ])"), "*"),
+    (re.compile(r"(?<=[A-Za-z0-9])\s+(?=[A-Za-zµμ]+\^-)"), "*"),
+)
+
+
 def _spelled(text: str) -> str:
     for typed, read in _SPELLINGS.items():
         text = text.replace(typed, read)
     text = text.strip().rstrip(".")
+    for form, plain in _FORMS:
+        text = form.sub(plain, text)
     if text in _WORDS:
         return _WORDS[text]
     # Only whole words are replaced: 'ml' inside 'ml/min', never inside another word.
@@ -164,6 +179,8 @@ def parse_unit(text: str) -> tuple[str, str]:
     (('mL/min', ''), ('bar', 'absolute'))
     """
     stripped = text.strip()
+    for form, plain in _FORMS[2:4]:
+        stripped = form.sub(plain, stripped)
     reference = ""
     if stripped.lower() in _FUSED:
         stripped, reference = _FUSED[stripped.lower()]
