@@ -8,7 +8,7 @@ from __future__ import annotations
 
 import math
 import re
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from functools import lru_cache
 from types import MappingProxyType
 from typing import Any
@@ -20,7 +20,9 @@ from .errors import InputError, UnitError
 __all__ = [
     "DIMENSIONS",
     "Given",
+    "absolute_pressure",
     "from_si",
+    "parse_either",
     "parse_given",
     "parse_unit",
     "significant",
@@ -287,9 +289,39 @@ def parse_given(value: Any, dimension: str, name: str = "value") -> Given:
         number, unit = float(value.magnitude), f"{value.units}"
         spelled = _factor_checked(unit, dimension, name, str(value))
         return _finite(Given(value=float(convert(number, spelled, DIMENSIONS[dimension])), dimension=dimension, unit=unit, text=str(value)), name)
-    if isinstance(value, bool) or not isinstance(value, (int, float)) and not hasattr(value, "__float__"):
+    if isinstance(value, bool) or (not isinstance(value, (int, float)) and not hasattr(value, "__float__")):
         raise InputError(f"{name} = {value!r} is not a number; give it as {_EXAMPLES.get(dimension, 'a number')}", name=name, value=value)
     return _finite(Given(value=float(value), dimension=dimension, unit=DIMENSIONS[dimension], text=f"{float(value)!r}"), name)
+
+
+def parse_either(value: Any, dimensions: tuple[str, ...], name: str = "value") -> Given:
+    """Read a value that may have one of several dimensions; a bare number is in SI of the first.
+
+    >>> parse_either("46 mm^2/s", ("viscosity", "kinematic_viscosity"), "viscosity").dimension
+    'kinematic_viscosity'
+    """
+    first: InputError | None = None
+    for dimension in dimensions:
+        try:
+            given = parse_given(value, dimension, name)
+        except UnitError as problem:
+            first = first or problem
+        else:
+            return given
+    assert first is not None
+    raise first
+
+
+def absolute_pressure(value: Any, name: str = "pressure", ambient: float = 101325.0) -> Given:
+    """Read a pressure that a formula of gas or vapour takes: absolute, unless it says gauge.
+
+    >>> absolute_pressure("1 bar(g)").value
+    201325.0
+    """
+    given = parse_given(value, "pressure", name)
+    if given.reference != "gauge":
+        return given
+    return replace(given, value=given.value + ambient, reference="absolute")
 
 
 def _finite(given: Given, name: str) -> Given:
