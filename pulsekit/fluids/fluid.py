@@ -157,8 +157,8 @@ class Fluid:
         A changed viscosity of either kind takes the place of the other; with a changed density the
         kind of viscosity that was given is kept.
 
-        >>> Fluid(density=1000.0, viscosity="2 cSt").replace(density="1.1 g/cm^3").kinematic_viscosity
-        2e-06
+        >>> round(Fluid(density=1000.0, viscosity="2 cSt").replace(density=1100.0).viscosity, 9)
+        0.0022
         """
         fields: dict[str, Any] = {
             "density": self.givens.get("density", self.density),

@@ -109,10 +109,10 @@ def water_density(temperature: ArrayLike, pressure: ArrayLike = ATMOSPHERE) -> A
     """
     t = np.asarray(temperature, float) - 273.15
     t68 = 1.00024 * t
-    plain = _KELL_TO_SMOW * np.polyval(_KELL, t68) / (1.0 + 16.879850e-3 * t68)
+    still = _KELL_TO_SMOW * np.polyval(_KELL, t68) / (1.0 + 16.879850e-3 * t68)
     over = np.asarray(pressure, float) - ATMOSPHERE
     # Murnaghan: K grows in proportion to the pressure, so the density follows a power law.
-    return plain(plain * (1.0 + _STIFFENING * over / _isothermal_modulus(t)) ** (1.0 / _STIFFENING))
+    return plain(still * (1.0 + _STIFFENING * over / _isothermal_modulus(t)) ** (1.0 / _STIFFENING))
 
 
 # Isothermal bulk modulus at atmospheric pressure [Pa] against t [°C], and the growth of both moduli with pressure:
@@ -152,8 +152,8 @@ def water_bulk_modulus(temperature: ArrayLike, pressure: ArrayLike = ATMOSPHERE)
     '2.194 GPa'
     """
     t = np.asarray(temperature, float)
-    plain = water_density(t) * np.square(water_sound_speed(t))
-    return plain(plain + (5.70 + 0.0165 * (t - 273.15)) * (np.asarray(pressure, float) - ATMOSPHERE))
+    still = water_density(t) * np.square(water_sound_speed(t))
+    return plain(still + (5.70 + 0.0165 * (t - 273.15)) * (np.asarray(pressure, float) - ATMOSPHERE))
 
 
 def water_viscosity(temperature: ArrayLike, pressure: ArrayLike = ATMOSPHERE) -> Any:
