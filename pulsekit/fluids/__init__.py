@@ -2,5 +2,6 @@
 
 from .fluid import Fluid
 from .pure_water import water
+from .whole_blood import blood
 
-__all__ = ["Fluid", "water"]
+__all__ = ["Fluid", "blood", "water"]
