@@ -11,7 +11,7 @@ from typing import Any
 import numpy as np
 from numpy.typing import NDArray
 
-from ..errors import InputError, MissingColumnError, RecordingError
+from ..errors import InputError, MissingColumnError, RecordingError, UnitError
 from .clock import Clock
 from .signal import Signal
 
@@ -32,6 +32,7 @@ class Column:
     clock: int = 0  # which of the recording's clocks its rows follow
     remarks: tuple[str, ...] = ()
     look: Any = None
+    problem: str = ""  # why its unit could not be read; raised when the column is asked for
 
 
 @dataclass(frozen=True, eq=False, kw_only=True)
@@ -52,17 +53,24 @@ class Recording:
     time_column: str = ""
     layout: Mapping[str, str] = field(default_factory=lambda: _NOTHING)  # encoding, delimiter, decimal mark
     left_aside: tuple[str, ...] = ()  # columns of text
-    blocks: tuple[str, ...] = ()
+    blocks: tuple[str, ...] = ()  # blocks, groups or sheets that the file has
+    order: tuple[str, ...] = ()  # all names in file order
+    time_names: tuple[str, ...] = ()  # columns that became clocks
+    time_unit: str = ""
+    stated_period: float | None = None  # R-R interval or period that the file states [s]
 
-    @property
+    @cached_property
     def columns(self) -> tuple[str, ...]:
-        """Names of the columns, in file order."""
-        return tuple(column.name for column in self.table)
+        """Names of the columns of numbers, in file order, the time column with them."""
+        here = {column.name for column in self.table} | set(self.time_names)
+        ordered = [name for name in self.order if name in here]
+        return tuple(dict.fromkeys([*ordered, *self.time_names, *(column.name for column in self.table)]))
 
     @cached_property
     def units(self) -> Mapping[str, str]:
         """Unit of each column as written; "" where there is none."""
-        return MappingProxyType({column.name: column.unit for column in self.table})
+        written = {column.name: column.unit for column in self.table} | dict.fromkeys(self.time_names, self.time_unit or "s")
+        return MappingProxyType({name: written[name] for name in self.columns})
 
     @property
     def clock(self) -> Clock:
@@ -94,7 +102,12 @@ class Recording:
             raise InputError(
                 f"a column is asked for by its name, not {name!r}; there are: {', '.join(self.columns)}", name="column", value=name
             )
+        if name in self.time_names:
+            clock = self.clocks[min(self.time_names.index(name), len(self.clocks) - 1)]
+            return Signal(clock, clock.instants, unit=self.time_unit or "s", name=name, dimension="time", remarks=self.remarks)
         column = self.column(name)
+        if column.problem:
+            raise UnitError(f"{self.path}: column {column.name!r}: {column.problem}", name=column.name, value=column.header)
         clock = self.clocks[column.clock]
         present = np.isfinite(column.values)
         if not present.any():
@@ -102,18 +115,63 @@ class Recording:
         values = column.values
         if not present.all():
             clock, values = clock.taken(present), column.values[present]
-        return Signal(
-            clock,
-            values,
-            unit=column.unit,
-            name=column.name,
-            dimension=column.dimension,
-            look=column.look,
-            remarks=self.remarks + column.remarks,
-        )
+        return Signal(clock, values, unit=column.unit, name=column.name, dimension=column.dimension, look=column.look, remarks=self.remarks)
 
     def __contains__(self, name: object) -> bool:
-        return isinstance(name, str) and any(name in (column.name, column.header) for column in self.table)
+        return isinstance(name, str) and (name in self.columns or any(name == column.header for column in self.table))
+
+    def join(self, forward: str, reverse: str, *, name: str = "") -> Signal:
+        """Join a forward and a reverse channel into one signed signal: forward minus the size of reverse.
+
+        Faults are looked for in the joined signal only: zeros of either channel are data.
+
+        Raises
+        ------
+        RecordingError
+            If either holds numbers of the wrong sign for that reading, or their units or rows differ.
+        """
+        ahead, back = self[forward], self[reverse]
+        where = f"{self.path}: "
+        if ahead.dimension != back.dimension or len(ahead) != len(back) or not np.array_equal(ahead.time, back.time):
+            raise RecordingError(
+                f"{where}columns {forward!r} and {reverse!r} cannot be joined: their units or their rows differ",
+                path=self.path,
+                column=reverse,
+            )
+        if float(ahead.values.min()) < 0:
+            raise RecordingError(
+                f"{where}column {forward!r} is to be forward flow but has negative values; use it alone if it is signed",
+                path=self.path,
+                column=forward,
+            )
+        low, high = float(back.values.min()), float(back.values.max())
+        if low < 0 < high:
+            raise RecordingError(
+                f"{where}column {reverse!r} is to be reverse flow but has both signs; use it alone if it is signed",
+                path=self.path,
+                column=reverse,
+            )
+        sign = "" if high > 0 else " (its numbers are negative already)"
+        remark = f"Columns {forward!r} and {reverse!r} joined: forward minus reverse{sign}."
+        look = self.column(forward).look
+        return Signal(
+            ahead.clock, ahead.values - np.abs(back.values), unit=ahead.unit, name=name or f"{forward} - {reverse}", dimension=ahead.dimension, look=look,
+            remarks=(*self.remarks, remark),
+        )  # fmt: skip
+
+    def describe(self) -> str:
+        """Tell what was read, as text: columns, units, rate, gaps, remarks, first rows."""
+        from .reading.describe import as_text
+
+        return as_text(self)
+
+    def _repr_html_(self) -> str:
+        from .reading.describe import as_html
+
+        return as_html(self)
+
+    def __repr__(self) -> str:
+        return f"<Recording {self.path!r}: {len(self)} rows, columns {', '.join(self.columns)}>"
 
     def __iter__(self) -> Iterator[str]:
         return iter(self.columns)

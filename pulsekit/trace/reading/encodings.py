@@ -25,7 +25,11 @@ def find_encoding(source: Source, told: Told, notes: Notes) -> str:
     marked = next((name for mark, name in _MARKS if head.startswith(mark)), None)
     if told.encoding is not None:
         # 'utf-8' on a file with a mark, or 'utf-16' without: the mark is no part of the first name.
-        return marked if marked and codecs.lookup(told.encoding).name in ("utf-8", "utf-16", "utf-16-le", "utf-16-be", "utf-32") else told.encoding
+        return (
+            marked
+            if marked and codecs.lookup(told.encoding).name in ("utf-8", "utf-16", "utf-16-le", "utf-16-be", "utf-32")
+            else told.encoding
+        )
     if marked:
         return marked
     if b"\x00" in head:
@@ -68,7 +72,9 @@ def _eight_bit(part: bytes, notes: Notes) -> str:
         from charset_normalizer import from_bytes
 
         lines = b"\n".join(line for line in part.splitlines() if not line.isascii())
-        best = from_bytes(lines[:20_000], cp_isolation=["cp1252", "cp1250", "cp1251", "mac_roman", "cp437", "shift_jis", "gb18030", "euc_kr", "big5"]).best()
+        best = from_bytes(
+            lines[:20_000], cp_isolation=["cp1252", "cp1250", "cp1251", "mac_roman", "cp437", "shift_jis", "gb18030", "euc_kr", "big5"]
+        ).best()
         if best is not None:
             chosen = best.encoding
     if chosen == "cp1252":

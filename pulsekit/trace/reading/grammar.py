@@ -10,14 +10,114 @@ __all__ = ["BLANK", "CLOCK", "MISSING", "NUMBER", "OVERFLOW", "TEXT", "classify"
 BLANK, NUMBER, MISSING, OVERFLOW, CLOCK, TEXT = "blank", "number", "missing", "overflow", "clock", "text"
 
 _MISSING = frozenset(
-    "nan n/a #n/a #n/a! #na na null none nil missing -- --- ---- - – — . .. ? ?? nd n.d. n.a. #div/0! #ref! #value! #num! #name? #null! <na> nat "
-    "1.#qnan -1.#ind 1.#ind -1.#qnan nan(ind) -nan -nan(ind) +nan not_a_number invalid bad error err fault void empty blank lost dropout off no_signal "
-    "noread".split()
+    [
+        "nan",
+        "n/a",
+        "#n/a",
+        "#n/a!",
+        "#na",
+        "na",
+        "null",
+        "none",
+        "nil",
+        "missing",
+        "--",
+        "---",
+        "----",
+        "-",
+        "–",
+        "—",
+        ".",
+        "..",
+        "?",
+        "??",
+        "nd",
+        "n.d.",
+        "n.a.",
+        "#div/0!",
+        "#ref!",
+        "#value!",
+        "#num!",
+        "#name?",
+        "#null!",
+        "<na>",
+        "nat",
+        "1.#qnan",
+        "-1.#ind",
+        "1.#ind",
+        "-1.#qnan",
+        "nan(ind)",
+        "-nan",
+        "-nan(ind)",
+        "+nan",
+        "not_a_number",
+        "invalid",
+        "bad",
+        "error",
+        "err",
+        "fault",
+        "void",
+        "empty",
+        "blank",
+        "lost",
+        "dropout",
+        "off",
+        "no_signal",
+        "noread",
+    ]
 )
 _OVERFLOW = frozenset(
-    "inf +inf -inf infinity +infinity -infinity 1.#inf -1.#inf ol -ol +ol o.l. o.l over overflow ovf ovl ovld overrange overload over-range out-of-range "
-    "overld +over -over under underflow underrange underload sat saturated clip clipped hi lo high low #### **** ***** ##### ###### ****** ### "
-    "+ovf -ovf >max <min ovrflow".split()
+    [
+        "inf",
+        "+inf",
+        "-inf",
+        "infinity",
+        "+infinity",
+        "-infinity",
+        "1.#inf",
+        "-1.#inf",
+        "ol",
+        "-ol",
+        "+ol",
+        "o.l.",
+        "o.l",
+        "over",
+        "overflow",
+        "ovf",
+        "ovl",
+        "ovld",
+        "overrange",
+        "overload",
+        "over-range",
+        "out-of-range",
+        "overld",
+        "+over",
+        "-over",
+        "under",
+        "underflow",
+        "underrange",
+        "underload",
+        "sat",
+        "saturated",
+        "clip",
+        "clipped",
+        "hi",
+        "lo",
+        "high",
+        "low",
+        "####",
+        "****",
+        "*****",
+        "#####",
+        "######",
+        "******",
+        "###",
+        "+ovf",
+        "-ovf",
+        ">max",
+        "<min",
+        "ovrflow",
+    ]
 )
 _BEYOND = re.compile(r"^[<>≤≥]=?\s*[+-]?[\d.,]+$")
 _STARS = re.compile(r"^[*#]{2,}$")
@@ -32,7 +132,9 @@ _GROUPED = {
 _CLOCKS = (
     re.compile(r"^\d{1,3}:\d{2}(?::\d{2})?(?:[.,]\d{1,9})?(?:\s*[AaPp]\.?[Mm]\.?)?$"),
     re.compile(r"^\d{1,2}:\d{2}:\d{2}[:;]\d{1,6}$"),
-    re.compile(r"^\d{4}[-/.]\d{1,2}[-/.]\d{1,2}(?:[T\s_,]+\d{1,2}:\d{2}(?::\d{2})?(?:[.,]\d{1,9})?\s*(?:[AaPp][Mm]|Z|UTC|[+-]\d{2}:?\d{2}|[+-]\d{2})?)?$"),
+    re.compile(
+        r"^\d{4}[-/.]\d{1,2}[-/.]\d{1,2}(?:[T\s_,]+\d{1,2}:\d{2}(?::\d{2})?(?:[.,]\d{1,9})?\s*(?:[AaPp][Mm]|Z|UTC|[+-]\d{2}:?\d{2}|[+-]\d{2})?)?$"
+    ),
     re.compile(r"^\d{1,2}[-/.]\d{1,2}[-/.](?:\d{4}|\d{2})(?:[T\s_,]+\d{1,2}:\d{2}(?::\d{2})?(?:[.,]\d{1,9})?\s*(?:[AaPp]\.?[Mm]\.?)?)?$"),
     re.compile(r"^\d{1,2}[-\s][A-Za-z]{3,9}\.?[-\s]\d{2,4}(?:\s+\d{1,2}:\d{2}(?::\d{2})?(?:[.,]\d{1,9})?)?$"),
     re.compile(r"^\d{8}T\d{6}(?:[.,]\d{1,9})?(?:Z|[+-]\d{2}:?\d{2})?$"),
@@ -82,7 +184,9 @@ def number(cell: str, decimal: str) -> float:
     """
     text = plain(cell)
     if _DECIMAL[decimal].match(text):
-        return float(text.replace(decimal, ".").replace("D", "e").replace("d", "e") if decimal == "," or "D" in text or "d" in text else text)
+        return float(
+            text.replace(decimal, ".").replace("D", "e").replace("d", "e") if decimal == "," or "D" in text or "d" in text else text
+        )
     if match := _GROUPED[decimal].match(text):
         return float(text.replace(match["mark"], "").replace(decimal, "."))
     return float("nan")

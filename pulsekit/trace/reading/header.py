@@ -87,7 +87,12 @@ def read_header(lines: Sequence[str], layout: Layout, notes: Notes) -> None:
         elif names is not None:
             used = {place}
             layout.header_cells = names
-            if len(above) > 1 and len(cells) > 1 and _is_unit_row(_cells(lines[above[-2]], layout.delimiter), layout) and not is_comment(lines[above[-2]]):
+            if (
+                len(above) > 1
+                and len(cells) > 1
+                and _is_unit_row(_cells(lines[above[-2]], layout.delimiter), layout)
+                and not is_comment(lines[above[-2]])
+            ):
                 units = _cells(lines[above[-2]], layout.delimiter)
                 used.add(above[-2])
         else:
@@ -110,9 +115,14 @@ def _other_header(lines: Sequence[str], place: int, layout: Layout, notes: Notes
     cells = _cells(line, layout.delimiter)
     if len(cells) < 2 or is_comment(line) or _KEY.match(_bare(line)) or not _texts(cells) or layout.delimiter in (" ", ""):
         return None
-    hint = "; the commas may be both delimiter and decimal mark: export with another delimiter" if layout.delimiter == "," and layout.width == 2 * len(cells) else ""
+    hint = (
+        "; the commas may be both delimiter and decimal mark: export with another delimiter"
+        if layout.delimiter == "," and layout.width == 2 * len(cells)
+        else ""
+    )
     raise notes.refuse(
-        f"the header names {len(cells)} columns ({clean(', '.join(cells))}) but the rows have {least} cells{hint or '; mend the header, or pass delimiter='}", line=place + 1
+        f"the header names {len(cells)} columns ({clean(', '.join(cells))}) but the rows have {least} cells{hint or '; mend the header, or pass delimiter='}",
+        line=place + 1,
     )
 
 
@@ -125,7 +135,7 @@ def read_preamble(lines: Sequence[str], delimiter: str) -> dict[str, str]:
         cells = [cell for cell in cells if cell]
         match = _KEY.match(plain(text)) if len(cells) < 2 or _KEY.match(cells[0]) else None
         if match:
-            key, value = match["key"].strip(), match["value"].strip(" \t\"" + (delimiter if delimiter.strip() else ""))
+            key, value = match["key"].strip(), match["value"].strip(' \t"' + (delimiter if delimiter.strip() else ""))
         elif len(cells) >= 2:
             key, value = cells[0].rstrip(":= "), " ".join(cells[1:])
         else:

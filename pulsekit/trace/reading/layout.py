@@ -146,7 +146,10 @@ def table_shape(lines: Sequence[str], told: Told, notes: Notes) -> Layout | None
     """Settle delimiter, width, kinds of the columns and first row; None if there is no table."""
     for number, line in enumerate(lines[:5], 1):
         if max(line.count(mark) for mark in ",;\t|") > LARGEST_WIDTH:
-            raise notes.refuse(f"this line has more than {LARGEST_WIDTH} cells; a recording has fewer columns: turn the table, or export fewer channels", line=number)
+            raise notes.refuse(
+                f"this line has more than {LARGEST_WIDTH} cells; a recording has fewer columns: turn the table, or export fewer channels",
+                line=number,
+            )
     candidates = (told.delimiter,) if told.delimiter else _CANDIDATES
     tried = [found for mark in candidates if (found := _try(lines, mark, told.decimal))]
     if not tried:

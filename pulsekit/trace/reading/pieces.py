@@ -28,7 +28,9 @@ class Piece:
     ended: bool
 
 
-def pieces(source: Source, encoding: str, told: Told, notes: Notes, *, digest: Any = None, size: int = PIECE, quoted: bool = False) -> Iterator[Piece]:
+def pieces(
+    source: Source, encoding: str, told: Told, notes: Notes, *, digest: Any = None, size: int = PIECE, quoted: bool = False
+) -> Iterator[Piece]:
     """Yield the file in pieces; feeds ``digest`` with the raw bytes, tells progress, can be stopped."""
     digest = digest if digest is not None else hashlib.sha256()
     plain = encoding in ("utf-8", "utf-8-sig", "ascii")
@@ -51,7 +53,9 @@ def pieces(source: Source, encoding: str, told: Told, notes: Notes, *, digest: A
             piece, rest = whole[:cut], whole[cut:]
             if b"\x00" in piece:
                 place = piece.index(b"\x00")
-                raise notes.refuse("there is a NUL byte: the file is damaged or no plain text; export it again", line=line + _line_ends(piece[:place]))
+                raise notes.refuse(
+                    "there is a NUL byte: the file is damaged or no plain text; export it again", line=line + _line_ends(piece[:place])
+                )
             if piece or last:
                 if decoder is None and not piece.isascii():
                     piece = _checked(piece, line, notes)
@@ -87,7 +91,10 @@ def _decoded(decoder: Any, raw: bytes, last: bool, line: int, notes: Notes) -> b
     try:
         return str(decoder.decode(raw, False)).encode() if not last else _rest(decoder, notes)
     except UnicodeError as problem:
-        raise notes.refuse(f"bytes that are not {getattr(problem, 'encoding', 'text')} after about this line; pass the right encoding=, or export again", line=line) from problem
+        raise notes.refuse(
+            f"bytes that are not {getattr(problem, 'encoding', 'text')} after about this line; pass the right encoding=, or export again",
+            line=line,
+        ) from problem
 
 
 def _rest(decoder: Any, notes: Notes) -> bytes:

@@ -2,21 +2,14 @@
 
 from __future__ import annotations
 
-import hashlib
-import io
-import re
 from collections.abc import Callable, Mapping, Sequence
-from pathlib import Path
 from typing import Any
 
-import numpy as np
-import pandas as pd
-
-from ...errors import MissingFileError, PulsekitError, RecordingError
-from ...quantities import DIMENSIONS, convert, parse_unit, to_si, unit_dimension
-from ..clock import Clock
-from ..recording import Column, Recording
-from ..signal import _clock_of
+from ..recording import Recording
+from .formats import kind_of_bytes, read_packed_format
+from .source import open_source, unpacked
+from .textread import read_text
+from .told import Notes, make_told
 
 __all__ = ["read_recording"]
 
@@ -35,43 +28,66 @@ def read_recording(
     progress: Callable[[float], Any] | None = None,
     stop: Callable[[], bool] | None = None,
 ) -> Recording:
-    """Read a recording (first, simple form)."""
-    path = str(source)
-    try:
-        data = Path(source).read_bytes()
-    except OSError as problem:
-        raise MissingFileError(f"{path}: {problem.strerror or problem}", path=path) from problem
-    lines = data.decode(encoding or "utf-8-sig").splitlines()
-    head = next(i for i, line in enumerate(lines) if len(re.split(r"[,;\t]", line)) > 1 and not line.startswith("#") and ": " not in line)
-    frame = pd.read_csv(io.StringIO("\n".join(lines[head:])), sep=delimiter or ",", decimal=decimal or ".", skipinitialspace=True)
-    preamble = dict(line.lstrip("# ").split(": ", 1) for line in lines[:head] if ": " in line)
-    table = []
-    remarks: list[str] = []
-    for header in frame.columns:
-        match = re.match(r"^(?P<name>.*?)\s*[\[(](?P<unit>.*)[\])]\s*$", header)
-        name, unit = (match["name"], match["unit"]) if match else (header, "")
-        unit = (units or {}).get(name, unit)
-        dimension = unit_dimension(unit) if unit else None
-        values = frame[header].to_numpy(float)
-        if dimension:
-            values = convert(values, parse_unit(unit)[0], DIMENSIONS[dimension])
-        table.append(Column(name=name, header=header, unit=unit, dimension=dimension, values=values))
-    clock_column = time or next((c.name for c in table if c.dimension == "time" or c.name.lower() in ("time", "t")), None)
-    if sample_rate is not None:
-        clock = Clock(interval=1 / to_si(sample_rate, "frequency", "sample_rate"), count=len(frame))
-    elif clock_column:
-        clock = _clock_of(next(c.values for c in table if c.name == clock_column), clock_column)
-    else:
-        raise RecordingError(f"{path}: no time column; name it with time=, or give sample_rate=", path=path)
-    return Recording(
-        table=tuple(table),
-        clocks=(clock,),
-        path=path,
-        sha256=hashlib.sha256(data).hexdigest(),
-        preamble=preamble,
-        time_column=clock_column or "",
-        remarks=tuple(remarks),
-    )
+    """Read a recording as instruments and colleagues write it.
 
+    It is read right and everything guessed, repaired or dropped stands in ``remarks``, or it is refused
+    with file, line, column and remedy. Delimited text of any sane kind; also gzip, .xlsx, .mat, .parquet,
+    .tdms, .edf, .mf4 and .wav (some need an optional extra, which the error names). All options are found
+    out if not given.
 
-_ = (PulsekitError, np)
+    Parameters
+    ----------
+    source : path, bytes, (name, bytes), mapping with name and content, or open file
+        The recording.
+    time : str, optional
+        Name of the time column; "" to take none of them (with ``sample_rate``).
+    units : mapping of column to unit, optional
+        Overrules what the file says, as in ``{"flow": "mL/min", "time": "ms"}``.
+    sample_rate : float or str, optional
+        Of evenly spaced rows, or of the samples that a column counts. [Hz]
+    decimal, delimiter, encoding : str, optional
+        "." or ","; one character, " " for runs of blanks; a codec such as "cp1252".
+    block : str or int, optional
+        Which block, sheet or group, where a file has several.
+    columns : sequence of str, optional
+        Only these columns are kept (a long recording then needs less memory).
+    progress : callable, optional
+        Called with the fraction read, 0 to 1.
+    stop : callable, optional
+        Called now and then; reading stops when it returns True.
+
+    Returns
+    -------
+    Recording
+
+    Raises
+    ------
+    RecordingError
+        If the file cannot be read without guessing a number.
+    MissingFileError, MissingColumnError, MissingExtraError, InputError, StoppedError
+        As their names say.
+
+    Examples
+    --------
+    >>> recording = read_recording(("run.csv", b"time (ms);flow (mL/min)\\n0;61,5\\n10;63,0\\n20;62,4\\n"))
+    >>> recording.columns, recording["flow"].time.tolist(), recording.remarks
+    (('time', 'flow'), [0.0, 0.01, 0.02], ('Decimal mark is the comma.',))
+    """
+    told = make_told(
+        time=time, units=units, sample_rate=sample_rate, decimal=decimal, delimiter=delimiter, encoding=encoding, block=block, columns=columns,
+        progress=progress, stop=stop,
+    )  # fmt: skip
+    opened = open_source(source)
+    notes = Notes(opened.name)
+    told.pause(notes.where, 0.0)
+    head = opened.part(0, 1024)
+    kind = kind_of_bytes(opened.name, head, notes)
+    if kind == "gz":
+        opened = unpacked(opened, told, notes)
+        head = opened.part(0, 1024)
+        kind = kind_of_bytes(opened.name, head, notes)
+        if kind == "gz":
+            raise notes.refuse("the file is packed twice; unpack it yourself, then read the plain file")
+    recording = read_text(opened, told, notes) if kind == "text" else read_packed_format(kind, opened, told, notes)
+    told.pause(notes.where, 1.0)
+    return recording

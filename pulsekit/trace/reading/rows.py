@@ -97,7 +97,7 @@ class RowReader:
         layout = self.layout
         if (b'"' in text and not layout.quoted) or (layout.decimal is None and (b"," in text) and layout.delimiter != ","):
             return None
-        kinds: dict[int, Any] = {place: str for place in range(layout.width)}
+        kinds: dict[int, Any] = dict.fromkeys(range(layout.width), str)
         kinds |= dict.fromkeys(self.stored, np.float64)
         try:
             return pd.read_csv(
@@ -286,10 +286,14 @@ class RowReader:
                     path=self.notes.where, line=first[0],
                 )  # fmt: skip
             what = "line was" if self.bad_count == 1 else "lines were"
-            self.notes.add(f"{self.bad_count} {what} left out because they are no rows of the table: line {listed(lines)} ({clean(self.bad[0][1], 40)!r}).")
+            self.notes.add(
+                f"{self.bad_count} {what} left out because they are no rows of the table: line {listed(lines)} ({clean(self.bad[0][1], 40)!r})."
+            )
         if self.tail:
             line, raw = self.tail[0]
-            self.notes.add(f"{len(self.tail)} line{'s' if len(self.tail) > 1 else ''} after the last row left aside as a footer, from line {line} ({clean(raw, 40)!r}).")
+            self.notes.add(
+                f"{len(self.tail)} line{'s' if len(self.tail) > 1 else ''} after the last row left aside as a footer, from line {line} ({clean(raw, 40)!r})."
+            )
         if self.cut:
             self.notes.add(f"The last line ({self.cut[0]}) was cut: {clean(self.cut[1], 40)!r} is no whole row and was left out.")
 

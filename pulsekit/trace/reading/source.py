@@ -93,7 +93,9 @@ def open_source(source: Any) -> Source:
     if isinstance(source, str):
         source = source.encode()
     if not isinstance(source, (bytes, bytearray, memoryview)):
-        raise InputError(f"a recording is read from a path, bytes, (name, bytes) or an open file, not from {type(source).__name__}", name="source")
+        raise InputError(
+            f"a recording is read from a path, bytes, (name, bytes) or an open file, not from {type(source).__name__}", name="source"
+        )
     data = bytes(source)
     return Source(name=_last_part(name), size=len(data), data=data)
 
@@ -105,13 +107,17 @@ def _from_path(path: str | Path) -> Source:
         if stat.S_ISDIR(state.st_mode):
             raise MissingFileError(f"{shown}: this is a folder; name the file in it", path=shown)
         if not stat.S_ISREG(state.st_mode):
-            raise MissingFileError(f"{shown}: this is no ordinary file (a device or a pipe); save the recording as a file first", path=shown)
+            raise MissingFileError(
+                f"{shown}: this is no ordinary file (a device or a pipe); save the recording as a file first", path=shown
+            )
         with Path(path).open("rb"):
             pass
     except OSError as problem:
         if isinstance(problem, MissingFileError):
             raise
-        raise MissingFileError(f"{shown}: the file cannot be opened ({problem.strerror or problem}); check name and folder", path=shown) from problem
+        raise MissingFileError(
+            f"{shown}: the file cannot be opened ({problem.strerror or problem}); check name and folder", path=shown
+        ) from problem
     except ValueError as problem:  # a NUL byte in the name
         raise MissingFileError(f"{shown}: this is no name of a file", path=shown) from problem
     return Source(name=shown, size=state.st_size, path=str(path))
@@ -141,7 +147,9 @@ def unpacked(source: Source, told: Told, notes: Notes) -> Source:
             size += len(plain)
             out.write(plain)
             if size > LARGEST_UNPACKED or (size > _SMALL and size > _LARGEST_RATIO * max(source.size, 1)):
-                raise notes.refuse(f"the packed file of {source.size} bytes grows beyond {size} bytes; unpack it yourself if you trust it, then read the plain file")
+                raise notes.refuse(
+                    f"the packed file of {source.size} bytes grows beyond {size} bytes; unpack it yourself if you trust it, then read the plain file"
+                )
             told.pause(notes.where, 0.5 * taken / max(source.size, 1))
     name = source.name.removesuffix(".gz")
     return Source(name=name, size=size, unpacked=out)  # type: ignore[arg-type]

@@ -11,7 +11,7 @@ from numpy.typing import NDArray
 from ..clock import Clock
 from .told import Notes, listed
 
-__all__ = ["Settled", "nice_interval", "settle", "shown_time"]
+__all__ = ["Settled", "StampStore", "nice_interval", "settle", "shown_time"]
 
 _SMALL = 1e-3  # deviations below this share of the interval are no matter
 _MOST_REPAIRS = 0.05
@@ -119,7 +119,9 @@ class _Work:
         """Settle stamps that lie on a line to their own resolution."""
         stamps = self.stamps
         if len(stamps) < 2:
-            raise self.notes.refuse(f"there {'is one row' if len(stamps) else 'are no rows'} with a time: a recording needs at least two", column=self.name)
+            raise self.notes.refuse(
+                f"there {'is one row' if len(stamps) else 'are no rows'} with a time: a recording needs at least two", column=self.name
+            )
         if not np.isfinite(stamps[0]) or not np.isfinite(stamps[-1]) or not stamps[-1] > stamps[0]:
             return False
         found = _line(stamps, self.resolution)
@@ -132,7 +134,9 @@ class _Work:
                 f"one sample every {shown_time(self.interval)}."
             )
         elif how == "single":
-            self.notes.add(f"Time stamps jitter as single-precision numbers do: rebuilt from count and span, one sample every {shown_time(self.interval)}.")
+            self.notes.add(
+                f"Time stamps jitter as single-precision numbers do: rebuilt from count and span, one sample every {shown_time(self.interval)}."
+            )
         return True
 
     def drop_missing(self) -> None:
@@ -149,7 +153,9 @@ class _Work:
         inside = known[0] == 0 and known[-1] == len(self.stamps) - 1
         if inside and count <= _MOST_REPAIRS * len(self.stamps) + 3 and _line(filled, self.resolution) is not None:
             self.stamps = filled
-            self.notes.add(f"{count} missing time stamp{'s' if count > 1 else ''} (line {listed(lines)}) rebuilt from their neighbours: the clock is uniform.")
+            self.notes.add(
+                f"{count} missing time stamp{'s' if count > 1 else ''} (line {listed(lines)}) rebuilt from their neighbours: the clock is uniform."
+            )
         else:
             self._keep(~absent)
             self.notes.add(f"{count} row{'s' if count > 1 else ''} without a time stamp left out (line {listed(lines)}).")
@@ -209,7 +215,11 @@ class _Work:
         falls = {int(place) + 1 for place in np.flatnonzero(steps < 0) if self._restarts_at(int(place) + 1, usual)}
         places = sorted(place for place in told | falls if 0 < place < len(self.stamps))
         if len(places) > 50:
-            raise self.notes.refuse("time falls back more than 50 times: this is no one recording; check the time column, or name another with time=", line=self._line(places[0]), column=self.name)
+            raise self.notes.refuse(
+                "time falls back more than 50 times: this is no one recording; check the time column, or name another with time=",
+                line=self._line(places[0]),
+                column=self.name,
+            )
         bounds = [0, *places, len(self.stamps)]
         self.segments = list(zip(bounds[:-1], bounds[1:], strict=True))
         moved = self.stamps.copy() if places else self.stamps
@@ -266,7 +276,9 @@ class _Work:
             lines = [self._line(place) for place in mended]
             self.stamps = self.stamps.copy()
             self.stamps[begin:end] = stamps
-            self.notes.add(f"{len(mended)} time stamp{'s' if len(mended) > 1 else ''} repeated or running backward (line {listed(lines)}) rebuilt from the count of rows.")
+            self.notes.add(
+                f"{len(mended)} time stamp{'s' if len(mended) > 1 else ''} repeated or running backward (line {listed(lines)}) rebuilt from the count of rows."
+            )
 
     def drop_repeats(self) -> None:
         """Rows whose stamp does not go on: left out if they are few."""
@@ -290,7 +302,9 @@ class _Work:
             )  # fmt: skip
         self.segments = [(int(keep[:a].sum()), int(keep[:b].sum())) for a, b in self.segments]
         self._keep(keep)
-        self.notes.add(f"{len(lost)} row{'s' if len(lost) > 1 else ''} with repeated or backward time stamps left out (line {listed(lines)}).")
+        self.notes.add(
+            f"{len(lost)} row{'s' if len(lost) > 1 else ''} with repeated or backward time stamps left out (line {listed(lines)})."
+        )
 
     def to_grid(self) -> None:
         """Find gaps; put stamps on a grid where all lie on one to their resolution; else leave them as they are."""
@@ -308,13 +322,19 @@ class _Work:
             self._regular_runs(runs, lines)
         else:
             scatter = float(np.percentile(np.abs(steps - usual), 95)) / usual
-            self.notes.add(f"Samples are unevenly spaced: the middle interval is {shown_time(usual)}, 95 % lie within {100 * scatter:.2g} % of it; stamps taken as written.")
+            self.notes.add(
+                f"Samples are unevenly spaced: the middle interval is {shown_time(usual)}, 95 % lie within {100 * scatter:.2g} % of it; stamps taken as written."
+            )
         irregular = not uniform and len(wide) > 0.02 * len(steps)
         if wide and not irregular:
             self.gaps = [(float(self.stamps[place]), float(self.stamps[place + 1])) for place in wide]
             total = sum(b - a - usual for a, b in self.gaps)
-            shown = listed([f"{a:.6g} to {b:.6g} s (line {self._line(place + 1)})" for (a, b), place in zip(self.gaps[:5], wide, strict=False)])
-            self.notes.add(f"{len(wide)} gap{'s' if len(wide) > 1 else ''} in time, {shown_time(total)} in all: {shown}{' …' if len(wide) > 5 else ''}; nothing was filled in.")
+            shown = listed(
+                [f"{a:.6g} to {b:.6g} s (line {self._line(place + 1)})" for (a, b), place in zip(self.gaps[:5], wide, strict=False)]
+            )
+            self.notes.add(
+                f"{len(wide)} gap{'s' if len(wide) > 1 else ''} in time, {shown_time(total)} in all: {shown}{' …' if len(wide) > 5 else ''}; nothing was filled in."
+            )
 
     def _regular_runs(self, runs: list[NDArray[np.intp]], lines: list[tuple[float, str]]) -> None:
         """Each stretch between gaps is uniform: rounded stamps in it are rebuilt."""
@@ -335,6 +355,52 @@ class _Work:
             self.notes.add(
                 f"Time stamps are written to {shown_time(self.resolution)} only: between gaps and restarts they were rebuilt from the count, one sample every {shown_time(interval)}."
             )
+
+
+class StampStore:
+    """Collects stamps; beyond a few million evenly spaced ones it keeps only the ends of each piece."""
+
+    def __init__(self, resolution: float) -> None:
+        self.resolution = resolution
+        self._raw: list[NDArray[np.float64]] = []
+        self._ends: list[tuple[int, float, float]] = []  # count, first, last of pieces that lie on a line
+        self._compact = True
+        self._count = 0
+
+    def add(self, stamps: NDArray[np.float64]) -> None:
+        """Append stamps in seconds."""
+        self._count += len(stamps)
+        if self._compact and self._count > 3_000_000:
+            self._compact = all(self._shorten(piece) for piece in self._raw) and self._shorten(stamps)
+            if self._compact:
+                self._raw.clear()
+                return
+            self._ends.clear() if self._raw else None
+        self._raw.append(np.array(stamps, float))
+
+    def _shorten(self, stamps: NDArray[np.float64]) -> bool:
+        if len(stamps) >= 1000 and np.isfinite(stamps).all() and stamps[-1] > stamps[0] and _line(stamps, self.resolution):
+            self._ends.append((len(stamps), float(stamps[0]), float(stamps[-1])))
+            return True
+        return False
+
+    def even(self) -> tuple[float, float, int] | None:
+        """Start, interval and count if everything lies on one line; only for a long recording."""
+        if self._raw or not self._ends:
+            return None
+        ends = np.array([(first, last) for _, first, last in self._ends])
+        counts = np.array([count for count, _, _ in self._ends])
+        rows = np.concatenate([[0], np.cumsum(counts)[:-1]])
+        start = float(ends[0, 0])
+        interval = float(ends[-1, 1] - start) / (self._count - 1)
+        slack = 2.02 * max(self.resolution, float(np.spacing(np.float32(ends[-1, 1])))) + _SMALL * interval
+        off = max(np.abs(ends[:, 0] - start - interval * rows).max(), np.abs(ends[:, 1] - start - interval * (rows + counts - 1)).max())
+        return (start, nice_interval(interval, max(self.resolution / self._count, 1e-15)), self._count) if off <= slack else None
+
+    def stamps(self) -> NDArray[np.float64]:
+        """All stamps; pieces that lie on a line are rebuilt from their ends."""
+        parts = [np.linspace(first, last, count) for count, first, last in self._ends]
+        return np.concatenate([*parts, *self._raw]) if parts or self._raw else np.empty(0)
 
 
 def _line(stamps: NDArray[np.float64], resolution: float) -> tuple[float, str] | None:

@@ -12,7 +12,18 @@ from ...quantities import to_si
 __all__ = ["Notes", "Told", "clean", "listed", "make_told"]
 
 #: Delimiters as people name them.
-_DELIMITERS = {"tab": "\t", "\\t": "\t", "comma": ",", "semicolon": ";", "pipe": "|", "space": " ", "blank": " ", "blanks": " ", "whitespace": " ", r"\s+": " "}
+_DELIMITERS = {
+    "tab": "\t",
+    "\\t": "\t",
+    "comma": ",",
+    "semicolon": ";",
+    "pipe": "|",
+    "space": " ",
+    "blank": " ",
+    "blanks": " ",
+    "whitespace": " ",
+    r"\s+": " ",
+}
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -76,14 +87,20 @@ def make_told(**options: Any) -> Told:
     if delimiter is not None:
         delimiter = _DELIMITERS.get(str(delimiter).lower(), delimiter)
         if not isinstance(delimiter, str) or len(delimiter) != 1 or delimiter.isalnum() or delimiter in "\"'\n\r.+-":
-            raise InputError(f"delimiter = {delimiter!r} cannot part columns; give ',', ';', '\\t', '|' or ' ' (runs of blanks)", name="delimiter", value=delimiter)
+            raise InputError(
+                f"delimiter = {delimiter!r} cannot part columns; give ',', ';', '\\t', '|' or ' ' (runs of blanks)",
+                name="delimiter",
+                value=delimiter,
+            )
     if decimal is not None and decimal == delimiter:
         raise InputError(f"decimal and delimiter are both {decimal!r}; a file cannot use one mark for both", name="decimal", value=decimal)
     if encoding is not None:
         try:
             "".encode(encoding)
         except (LookupError, TypeError) as problem:
-            raise InputError(f"encoding = {encoding!r} is not known; give 'utf-8', 'utf-16', 'cp1252' or 'latin-1'", name="encoding", value=encoding) from problem
+            raise InputError(
+                f"encoding = {encoding!r} is not known; give 'utf-8', 'utf-16', 'cp1252' or 'latin-1'", name="encoding", value=encoding
+            ) from problem
     rate = options.get("sample_rate")
     if rate is not None:
         rate = to_si(rate, "frequency", "sample_rate")
@@ -96,5 +113,8 @@ def make_told(**options: Any) -> Told:
     if not isinstance(units, Mapping):
         raise InputError(f"units = {units!r} must map column names to units, as in {{'flow': 'mL/min'}}", name="units", value=units)
     return Told(
-        **(options | {"units": dict(units), "delimiter": delimiter, "sample_rate": rate, "columns": None if columns is None else tuple(columns)})
+        **(
+            options
+            | {"units": dict(units), "delimiter": delimiter, "sample_rate": rate, "columns": None if columns is None else tuple(columns)}
+        )
     )

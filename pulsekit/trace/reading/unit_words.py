@@ -9,25 +9,220 @@ from functools import lru_cache
 from ...errors import UnitError
 from ...quantities import parse_unit, unit_dimension
 
-__all__ = ["HeaderUnit", "NO_UNIT", "read_unit", "split_header"]
+__all__ = ["NO_UNIT", "HeaderUnit", "read_unit", "split_header"]
 
 _ATOMS = frozenset(
-    "m mm cm dm km um nm µm μm in inch ft s sec secs ms msec us µs μs ns min mins h hr d L l mL ml dL dl cL uL µL μL ul cc ccm gal "
-    "Pa hPa kPa MPa GPa mPa bar mbar psi psig psia barg bara mmHg cmH2O cmH20 mmH2O inHg torr Torr atm dyn dyne N kN mN g kg mg V mV uV µV μV kV "
-    "A mA uA µA K degC degF °C °F ºC ℃ rpm RPM bpm gpm lpm GPM LPM P cP cp St cSt cst rad deg ° W kW J Hz hz kHz MHz % H2O Hg "
-    "mmhg MMHG mmHG kpa Kpa KPa KPA pa PA hz HZ Bar BAR PSI Psi Min rev r mPas Pas".split()
+    [
+        "m",
+        "mm",
+        "cm",
+        "dm",
+        "km",
+        "um",
+        "nm",
+        "µm",
+        "μm",
+        "in",
+        "inch",
+        "ft",
+        "s",
+        "sec",
+        "secs",
+        "ms",
+        "msec",
+        "us",
+        "µs",
+        "μs",
+        "ns",
+        "min",
+        "mins",
+        "h",
+        "hr",
+        "d",
+        "L",
+        "l",
+        "mL",
+        "ml",
+        "dL",
+        "dl",
+        "cL",
+        "uL",
+        "µL",
+        "μL",
+        "ul",
+        "cc",
+        "ccm",
+        "gal",
+        "Pa",
+        "hPa",
+        "kPa",
+        "MPa",
+        "GPa",
+        "mPa",
+        "bar",
+        "mbar",
+        "psi",
+        "psig",
+        "psia",
+        "barg",
+        "bara",
+        "mmHg",
+        "cmH2O",
+        "cmH20",
+        "mmH2O",
+        "inHg",
+        "torr",
+        "Torr",
+        "atm",
+        "dyn",
+        "dyne",
+        "N",
+        "kN",
+        "mN",
+        "g",
+        "kg",
+        "mg",
+        "V",
+        "mV",
+        "uV",
+        "µV",
+        "μV",
+        "kV",
+        "A",
+        "mA",
+        "uA",
+        "µA",
+        "K",
+        "degC",
+        "degF",
+        "°C",
+        "°F",
+        "ºC",
+        "℃",
+        "rpm",
+        "RPM",
+        "bpm",
+        "gpm",
+        "lpm",
+        "GPM",
+        "LPM",
+        "P",
+        "cP",
+        "cp",
+        "St",
+        "cSt",
+        "cst",
+        "rad",
+        "deg",
+        "°",
+        "W",
+        "kW",
+        "J",
+        "Hz",
+        "hz",
+        "kHz",
+        "MHz",
+        "%",
+        "H2O",
+        "Hg",
+        "mmhg",
+        "MMHG",
+        "mmHG",
+        "kpa",
+        "Kpa",
+        "KPa",
+        "KPA",
+        "pa",
+        "PA",
+        "hz",
+        "HZ",
+        "Bar",
+        "BAR",
+        "PSI",
+        "Psi",
+        "Min",
+        "rev",
+        "r",
+        "mPas",
+        "Pas",
+    ]
 )
 #: Single words that are also endings of names: 'p_in', 'q_m', 'v_min', 'flow_a' carry no unit.
-_DOUBTFUL_ENDINGS = frozenset("in inch m h hr d a A g K P N r l L W J min s ft V deg rad km St cp gal secs rev H2O Hg dyn".split())
-_TIME_ENDINGS = frozenset("s sec secs ms msec us µs μs ns min mins h".split())
-_TIME_LIKE = re.compile(r"(?i)^\W*(elapsed|rel\w*|abs\w*|sample|trigger)?[\s_.-]*(t|time|times|timestamp|zeit|temps|tiempo|tempo|tid|tijd|sec|seconds?|clock)\b")
+_DOUBTFUL_ENDINGS = frozenset(
+    [
+        "in",
+        "inch",
+        "m",
+        "h",
+        "hr",
+        "d",
+        "a",
+        "A",
+        "g",
+        "K",
+        "P",
+        "N",
+        "r",
+        "l",
+        "L",
+        "W",
+        "J",
+        "min",
+        "s",
+        "ft",
+        "V",
+        "deg",
+        "rad",
+        "km",
+        "St",
+        "cp",
+        "gal",
+        "secs",
+        "rev",
+        "H2O",
+        "Hg",
+        "dyn",
+    ]
+)
+_TIME_ENDINGS = frozenset(["s", "sec", "secs", "ms", "msec", "us", "µs", "μs", "ns", "min", "mins", "h"])
+_TIME_LIKE = re.compile(
+    r"(?i)^\W*(elapsed|rel\w*|abs\w*|sample|trigger)?[\s_.-]*(t|time|times|timestamp|zeit|temps|tiempo|tempo|tid|tijd|sec|seconds?|clock)\b"
+)
 _CAPITALS = {
     "ML": "mL", "L": "L", "UL": "uL", "MIN": "min", "SEC": "s", "S": "s", "MS": "ms", "US": "us", "CM": "cm", "MM": "mm", "M": "m", "MMHG": "mmHg", "CMH2O": "cmH2O",
     "KPA": "kPa", "PA": "Pa", "BAR": "bar", "MBAR": "mbar", "PSI": "psi", "HZ": "Hz", "CC": "cc", "V": "V", "A": "A", "RPM": "rpm", "LPM": "lpm", "GPM": "gpm", "H": "h",
     "DEGC": "degC",
 }  # fmt: skip
 #: What stands for "no unit".
-NO_UNIT = frozenset({"", "-", "--", "1", "a.u.", "a.u", "au", "arb", "arb.", "arb. unit", "arb. units", "n/a", "none", "no unit", "[-]", "counts", "count", "raw", "adc", "lsb", "#", "–", "—", "unitless", "bool"})
+NO_UNIT = frozenset(
+    {
+        "",
+        "-",
+        "--",
+        "1",
+        "a.u.",
+        "a.u",
+        "au",
+        "arb",
+        "arb.",
+        "arb. unit",
+        "arb. units",
+        "n/a",
+        "none",
+        "no unit",
+        "[-]",
+        "counts",
+        "count",
+        "raw",
+        "adc",
+        "lsb",
+        "#",
+        "–",
+        "—",
+        "unitless",
+        "bool",
+    }
+)
 _NO_UNIT_IN_ROUND = NO_UNIT - {"1", "raw", "adc", "#", "none", "bool", "n/a", ""}
 _BRACKETS = re.compile(r"^(?P<name>.*?)\s*(?:\((?P<a>.*)\)|\[(?P<b>.*)\]|\{(?P<c>.*)\}|<(?P<d>[^<>]*)>)\s*[.:;]*$", re.DOTALL)
 
@@ -86,7 +281,9 @@ def read_unit(text: str, name: str = "") -> HeaderUnit:
         return HeaderUnit(text=written, problem=f"unit {written!r} may mean MPa or mPa: tell it with units=")
     tidy = _tidy(written)
     if tidy in ("C", "F", "deg") and re.search(r"(?i)temp|\bT\b|_T|^T", name):
-        return HeaderUnit(text=written, unit={"C": "°C", "F": "°F"}.get(tidy, tidy), dimension="temperature", remark=f"unit {written!r} read as °{tidy}.")
+        return HeaderUnit(
+            text=written, unit={"C": "°C", "F": "°F"}.get(tidy, tidy), dimension="temperature", remark=f"unit {written!r} read as °{tidy}."
+        )
     tidy = {"mPas": "mPa*s", "Pas": "Pa*s"}.get(tidy, tidy)
     remark = ""
     if not _trade_unit(tidy) and tidy.upper() == tidy and any(letter.isalpha() for letter in tidy):
@@ -97,9 +294,14 @@ def read_unit(text: str, name: str = "") -> HeaderUnit:
         parse_unit(tidy)
         dimension = unit_dimension(tidy)
     except (UnitError, ArithmeticError, TypeError, ValueError, AttributeError):
-        return HeaderUnit(text=written, problem=f"unit {written!r} is not known; write it as in 'mL/min', 'cm/s', 'mmHg', 'kPa', 'ms', or tell it with units=")
+        return HeaderUnit(
+            text=written,
+            problem=f"unit {written!r} is not known; write it as in 'mL/min', 'cm/s', 'mmHg', 'kPa', 'ms', or tell it with units=",
+        )
     if dimension is None or (not _trade_unit(tidy) and dimension == "ratio"):
-        return HeaderUnit(text=written, unit="", dimension=None, remark=f"unit {written!r} is none that is used here: values stay as written.")
+        return HeaderUnit(
+            text=written, unit="", dimension=None, remark=f"unit {written!r} is none that is used here: values stay as written."
+        )
     return HeaderUnit(text=written, unit=written if _same(written, tidy) else tidy, dimension=dimension, remark=remark)
 
 
