@@ -22,7 +22,9 @@ def measured_viscosity(
     """
     if viscosity is None:
         if measured_at is not None:
-            raise InputError("measured_at is the temperature of a measured viscosity; give viscosity as well, or leave it out", name="measured_at")
+            raise InputError(
+                "measured_at is the temperature of a measured viscosity; give viscosity as well, or leave it out", name="measured_at"
+            )
         return law(temperature.value), {"correlation": correlation(accuracy)}, ()
     given = above_zero(parse_either(viscosity, ("viscosity", "kinematic_viscosity"), "viscosity"), "viscosity")
     value = given.value * (density if given.dimension == "kinematic_viscosity" else 1.0)
