@@ -101,13 +101,13 @@ def build(
         raise notes.refuse(
             "there is no column of numbers beside the time" + (f" (left aside: {', '.join(left_aside)})" if left_aside else "")
         )
+    values = [column for column in table if column.look]
+    if all(column.problem for column in values):
+        raise UnitError(f"{notes.where}: column {values[0].name!r}: {values[0].problem}", name=values[0].name, value=values[0].header)
     for column in table:
         for remark in column.remarks:
             notes.add(remark)
     return Recording(
-        table=tuple(column for column in table), clocks=tuple(clocks), remarks=tuple(notes.remarks), path=path, sha256=sha256, preamble=dict(preamble),
+        table=tuple(table), clocks=tuple(clocks), remarks=tuple(notes.remarks), path=path, sha256=sha256, preamble=dict(preamble),
         layout=dict(layout), time_column=time_column, left_aside=tuple(left_aside), blocks=tuple(blocks), **more,
     )  # fmt: skip
-
-
-_ = UnitError

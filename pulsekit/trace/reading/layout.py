@@ -175,8 +175,8 @@ def data_cells(lines: Sequence[str], layout: Layout) -> list[tuple[int, list[str
     return rows
 
 
-def find_suffixes(layout: Layout, rows: list[tuple[int, list[str]]]) -> None:
-    """Columns whose every cell carries the same unit."""
+def find_suffixes(layout: Layout, rows: list[tuple[int, list[str]]]) -> list[tuple[int, list[str]]]:
+    """Find columns whose every cell carries the same unit; return the rows without it."""
     for place, kind in enumerate(layout.kinds):
         cells = [plain(cells[place]) for _, cells in rows[:200]]
         parts = [suffix_of(cell) for cell in cells if classify(cell, None) == TEXT]
@@ -184,3 +184,11 @@ def find_suffixes(layout: Layout, rows: list[tuple[int, list[str]]]) -> None:
             words = {part[1] for part in parts if part}
             if len(words) == 1:
                 layout.suffixed[place] = words.pop()
+    if not layout.suffixed:
+        return rows
+    return [(line, [_without(cell) if place in layout.suffixed else cell for place, cell in enumerate(cells)]) for line, cells in rows]
+
+
+def _without(cell: str) -> str:
+    parted = suffix_of(cell) if classify(plain(cell), None) == TEXT else None
+    return parted[0] if parted else cell

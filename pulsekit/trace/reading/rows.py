@@ -18,7 +18,7 @@ from .layout import Layout, kind_of, split_line
 from .pieces import Piece
 from .told import Notes, clean, listed
 
-__all__ = ["Grown", "RowReader"]
+__all__ = ["Grown", "RowReader", "fixed_decimals"]
 
 _MARKERS = ["", "NaN", "nan", "NAN", "N/A", "n/a", "#N/A", "NA", "na", "null", "NULL", "--", "---", "-"]
 _SPLIT = 200_000  # a piece that is not clean is tried again in parts of this size [bytes]
@@ -46,6 +46,21 @@ class Grown:
         return self._room
 
 
+def decimals_of(cell: str, decimal: str) -> int:
+    """Count the digits after the decimal mark."""
+    return len(plain(cell).partition(decimal)[2])
+
+
+def fixed_decimals(rows: list[tuple[int, list[str]]], places: tuple[int, ...], decimal: str) -> dict[int, int]:
+    """Columns whose every sampled cell has the same number (above 0) of decimals: a shorter last cell was cut."""
+    found = {}
+    for place in places:
+        counts = {decimals_of(cells[place], decimal) for _, cells in rows[:400] if classify(cells[place], decimal) == NUMBER}
+        if len(counts) == 1 and len(rows) >= 5 and (count := counts.pop()):
+            found[place] = count
+    return found
+
+
 @dataclass
 class RowReader:
     """Takes pieces of text, gives numbers; keeps account of everything that was not a clean row."""
@@ -65,6 +80,7 @@ class RowReader:
     first_missing: dict[int, int] = field(default_factory=dict)
     odd_text: dict[int, list[tuple[int, str]]] = field(default_factory=dict)
     bad_count: int = 0
+    fixed: dict[int, int] = field(default_factory=dict)  # columns written with a fixed number of decimals
     cut: tuple[int, str] | None = None  # the last line, if it was cut
 
     def take(self, piece: Piece) -> None:
@@ -244,6 +260,8 @@ class RowReader:
             else:
                 odd.append((place, plain(cell)))
             row[place] = value if np.isfinite(value) else float("nan")
+        if unended and any(decimals_of(cells[place], layout.decimal or ".") < count for place, count in self.fixed.items()):
+            return None
         if (odd and (len(odd) >= max(1, len(self.stored) - 1) or numbers == 0)) or (unended and (lost or odd)):
             return None
         if not numbers and not any("overflow" in what for _, what in lost) and not self.texts:

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Callable
 from dataclasses import dataclass, field
+from itertools import pairwise
 
 import numpy as np
 from numpy.typing import NDArray
@@ -221,7 +222,7 @@ class _Work:
                 column=self.name,
             )
         bounds = [0, *places, len(self.stamps)]
-        self.segments = list(zip(bounds[:-1], bounds[1:], strict=True))
+        self.segments = list(pairwise(bounds))
         moved = self.stamps.copy() if places else self.stamps
         for place in places:
             before, after = float(moved[place - 1]), float(self.stamps[place])
@@ -425,11 +426,23 @@ def _line(stamps: NDArray[np.float64], resolution: float) -> tuple[float, str] |
         return nice_interval(rough, spread), "even"
     if count < 4:
         return None
-    if worst <= 1.01 * resolution + exact and resolution <= 0.02 * span:
+    if worst <= 1.01 * resolution + exact and resolution <= 0.02 * span and _patterned(stamps, rough, resolution, exact):
         return _from_turns(stamps, rough, resolution), "rounded"
     if worst <= 1.01 * single and single <= 0.02 * span and single > _SMALL * rough:
         return nice_interval(rough, single / (count - 1)), "single"
     return None
+
+
+def _patterned(stamps: NDArray[np.float64], rough: float, resolution: float, exact: float) -> bool:
+    """A rounded clock steps by the two multiples of its resolution on either side of the interval, never otherwise."""
+    below = np.floor(rough / resolution + 1e-3) * resolution
+    above = np.ceil(rough / resolution - 1e-3) * resolution
+    slack = 1e-3 * resolution + 4 * exact
+    for begin in range(0, len(stamps) - 1, 1_000_000):
+        steps = np.diff(stamps[begin : begin + 1_000_001])
+        if float(steps.min()) < below - slack or float(steps.max()) > above + slack:
+            return False
+    return True
 
 
 def _from_turns(stamps: NDArray[np.float64], rough: float, resolution: float) -> float:

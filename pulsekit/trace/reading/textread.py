@@ -3,8 +3,7 @@
 from __future__ import annotations
 
 import hashlib
-import re
-from typing import Any
+from itertools import pairwise
 
 import numpy as np
 from numpy.typing import NDArray
@@ -13,13 +12,14 @@ from ...errors import InputError, MissingColumnError
 from ..clock import Clock
 from ..recording import Recording
 from .assemble import RawColumn, build
+from .decimals import settle_marks
 from .encodings import find_encoding
 from .grammar import BLANK, CLOCK, NUMBER, TEXT
+from .head import head_lines
 from .header import read_header
-from .layout import Layout, data_cells, find_suffixes, split_line, table_shape
-from .marks import Evidence, weigh
+from .layout import Layout, data_cells, find_suffixes, table_shape
 from .pieces import pieces
-from .rows import Grown, RowReader
+from .rows import Grown, RowReader, fixed_decimals
 from .source import Source
 from .stamps import StampStore, settle, shown_time
 from .timeplan import TimePlan, find_column, plan_time, stated_rate, unit_of
@@ -28,17 +28,13 @@ from .told import Notes, Told, clean
 
 __all__ = ["read_text"]
 
-_HEAD = 400_000
-_SAMPLE = 20_000
-_SAMPLES = 8
-
 
 def read_text(source: Source, told: Told, notes: Notes) -> Recording:
     """Read a table of text."""
     if not source.size:
         raise notes.refuse("the file is empty")
     encoding = find_encoding(source, told, notes)
-    lines = _head_lines(source, encoding, told, notes)
+    lines = head_lines(source, encoding, told, notes)
     layout = table_shape(lines, told, notes)
     from .across import is_across, read_across
 
@@ -54,150 +50,10 @@ def read_text(source: Source, told: Told, notes: Notes) -> Recording:
     layout.encoding = encoding
     rows = data_cells(lines, layout)
     layout.quoted = any('"' in line for line in lines[layout.first :])
-    _settle_marks(source, layout, rows, told, notes)
-    find_suffixes(layout, rows)
+    rows = find_suffixes(layout, rows)
+    settle_marks(source, layout, rows, told, notes)
     read_header(lines, layout, notes)
     return _Reading(source, layout, rows, told, notes).run()
-
-
-def _head_lines(source: Source, encoding: str, told: Told, notes: Notes) -> list[str]:
-    """Lines of the first part of the file."""
-    quiet = Told(encoding=told.encoding, stop=told.stop)
-    size = _HEAD * (2 if encoding.startswith("utf-16") else 1)
-    first = next(iter(pieces(source, encoding, quiet, notes, size=size)), None)
-    text = first.text.decode("utf-8", "replace") if first else ""
-    if not text.strip():
-        first_two = list(_two(source, encoding, quiet, notes, size))
-        text = "".join(piece.decode("utf-8", "replace") for piece in first_two)
-    lines = text.replace("\r\n", "\n").replace("\r", "\n").split("\n")
-    if lines and not lines[-1]:
-        lines.pop()
-    lines = _joined_quotes(lines)
-    if not any(line.strip() for line in lines):
-        raise notes.refuse("the file holds no text")
-    return lines[:4000]
-
-
-def _two(source: Source, encoding: str, told: Told, notes: Notes, size: int) -> Any:
-    for order, piece in enumerate(pieces(source, encoding, told, notes, size=size)):
-        yield piece.text
-        if order >= 3:
-            return
-
-
-def _joined_quotes(lines: list[str]) -> list[str]:
-    """A header cell may hold a line end within quotes: join it, and keep the count of lines with blank ones."""
-    out: list[str] = []
-    held = ""
-    skipped = 0
-    for order, line in enumerate(lines[:200]):
-        held = f"{held} {line}" if held else line
-        if held.count('"') % 2 and order < 199 and skipped < 5:
-            skipped += 1
-            continue
-        out += [""] * skipped
-        out.append(held)
-        held, skipped = "", 0
-    return out + ([held] if held else []) + lines[200:]
-
-
-def _settle_marks(source: Source, layout: Layout, rows: list[tuple[int, list[str]]], told: Told, notes: Notes) -> None:
-    """Decimal and thousands marks from head, samples and, if need be, the whole file."""
-    useful = [place for place, kind in enumerate(layout.kinds) if kind == NUMBER]
-    evidence = weigh((line, [cells[place] for place in useful]) for line, cells in rows)
-    if told.decimal is not None:
-        layout.decimal = told.decimal
-        return
-    if layout.delimiter == "," and not layout.quoted:
-        layout.decimal = "."
-        _doubt_commas(layout, rows, notes, told)
-        return
-    if evidence.decimal() is None and not evidence.torn:
-        _weigh_samples(source, layout, useful, evidence)
-    if evidence.decimal() is None and not evidence.torn:
-        _weigh_all(source, layout, useful, evidence, notes)
-    if torn := evidence.torn:
-        raise notes.refuse(
-            f"decimal marks contradict each other: {torn[0][1]!r} in line {torn[0][0]} and {torn[1][1]!r} in line {torn[1][0]}; pass decimal='.' or decimal=','",
-            line=torn[1][0],
-        )
-    layout.decimal = evidence.decimal()
-    if layout.decimal is None:
-        _unclear(layout, evidence, notes)
-    other = evidence.comma_unclear or evidence.comma_groups if layout.decimal == "." else evidence.dot_unclear or evidence.dot_groups
-    if other:
-        shown = "comma" if layout.decimal == "." else "dot"
-        notes.add(
-            f"The {shown} parts thousands (as in {other[1]!r}, line {other[0]}): the decimal mark {layout.decimal!r} is settled by other cells."
-        )
-    elif layout.decimal == ",":
-        notes.add("Decimal mark is the comma.")
-
-
-def _unclear(layout: Layout, evidence: Evidence, notes: Notes) -> None:
-    """No cell settles the mark: integers, or every cell could be read in two ways."""
-    comma, dot = evidence.comma_unclear, evidence.dot_unclear
-    if comma or (dot and layout.delimiter == ";"):
-        line, text = comma or dot or (0, "")
-        bare = text.replace(",", "").replace(".", "")
-        mark = "," if comma else "."
-        other = "." if comma else ","
-        raise notes.refuse(
-            f"{text!r} can be read as {text.replace(',', '.')} or as {bare}, and no cell of the file settles it; pass decimal={mark!r} or decimal={other!r}",
-            line=line,
-        )
-    layout.decimal = "."
-    if dot:
-        notes.add(f"Every number has three digits after the dot (as in {dot[1]!r}): the dot was taken as the decimal mark.")
-
-
-def _doubt_commas(layout: Layout, rows: list[tuple[int, list[str]]], notes: Notes, told: Told) -> None:
-    """Whole numbers parted by commas, with leading zeros: the commas may be decimal marks."""
-    if told.delimiter or layout.width < 2:
-        return
-    for line, cells in rows[:500]:
-        if any("." in cell or ":" in cell for cell in cells):
-            return
-        for place in range(1, layout.width):
-            text = cells[place].strip()
-            if len(text) > 1 and text.startswith("0") and text.isdigit() and cells[place - 1].strip().lstrip("+-").isdigit():
-                layout.preamble["_doubt"] = f"{line}"
-                return
-    if layout.width == 2 and rows and not any(len(cells[0].strip()) != len(cells[0]) or cells[1].startswith(" ") for _, cells in rows[:50]):
-        layout.preamble["_pair"] = f"{rows[0][0]}"
-
-
-def _weigh_samples(source: Source, layout: Layout, useful: list[int], evidence: Evidence) -> None:
-    if layout.encoding.startswith(("utf-16", "utf-32")) or source.size < 2 * _HEAD:
-        return
-    for begin in np.linspace(_HEAD, max(source.size - _SAMPLE, _HEAD), _SAMPLES):
-        part = source.part(int(begin), _SAMPLE).decode("latin-1")
-        for line in re.split(r"[\r\n]+", part)[1:-1]:
-            cells = split_line(line, layout.delimiter)
-            if len(cells) == layout.width:
-                weigh([(0, [cells[place] for place in useful])], evidence)
-        if evidence.decimal() or evidence.torn:
-            return
-
-
-def _weigh_all(source: Source, layout: Layout, useful: list[int], evidence: Evidence, notes: Notes) -> None:
-    """Look for one cell that settles the mark in the whole file."""
-    pattern = re.compile(rb"(?<![\d.,:])(?:0[.,]\d|\d+[.,](?:\d{1,2}|\d{4,})(?!\d)|\d{4,}[.,]\d|\d{1,3}[.,]\d{3}[.,])")
-    for piece in pieces(source, layout.encoding, Told(), notes):
-        text = piece.text
-        if b"," not in text and b"." not in text:
-            continue
-        for found in pattern.finditer(text):
-            begin = max(text.rfind(b"\n", 0, found.start()), text.rfind(b"\r", 0, found.start())) + 1
-            end = min([place for place in (text.find(b"\n", found.end()), text.find(b"\r", found.end())) if place >= 0], default=len(text))
-            line = piece.first_line + text.count(b"\n", 0, begin)
-            if line <= layout.first:
-                continue
-            cells = split_line(text[begin:end].decode("utf-8", "replace"), layout.delimiter)
-            if len(cells) == layout.width:
-                weigh([(line, [cells[place] for place in useful])], evidence)
-                if evidence.decimal() or evidence.torn:
-                    return
 
 
 class _Reading:
@@ -288,7 +144,8 @@ class _Reading:
         """Read everything and build the recording."""
         source, layout, notes = self.source, self.layout, self.notes
         digest = hashlib.sha256()
-        self.reader = RowReader(layout=layout, notes=notes, stored=self.stored, texts=self.texts, sink=self._sink)
+        fixed = fixed_decimals(self.rows, self.stored, layout.decimal or ".")
+        self.reader = RowReader(layout=layout, notes=notes, stored=self.stored, texts=self.texts, sink=self._sink, fixed=fixed)
         done = 0
         for piece in pieces(source, layout.encoding, self.told, notes, digest=digest, quoted=layout.quoted):
             text, line = piece.text, piece.first_line
@@ -312,6 +169,9 @@ class _Reading:
             if place not in self.chosen:
                 continue
             total = sum(counted.values())
+            times = [self.reader.missing.get(plan.columns[0]) for plan in self.plan.extra if plan.columns[0] < place]
+            if times and times[-1] and sum(times[-1].values()) == total:
+                continue  # the shorter of two channels with their own times
             if total == self.reader.rows:
                 continue  # an empty column; said where it is left aside
             words = ", ".join(f"{count} × {what}" if count > 1 or len(counted) > 1 else what for what, count in counted.most_common(4))
@@ -331,8 +191,7 @@ class _Reading:
                 notes.add(
                     f"The header stands again in line {reader.restarts[0][1]}: the logger was started again; the stretches are kept apart, the time between is not known."
                 )
-                bounds = [0, *restarts, reader.rows]
-                segments = tuple(zip(bounds[:-1], bounds[1:], strict=True))
+                segments = tuple(pairwise([0, *restarts, reader.rows]))
                 return [Clock(stamps=np.arange(reader.rows) / rate, segments=segments, typical=1 / rate)], values, ""
             return [Clock(interval=1 / rate, count=reader.rows)], values, ""
         origin, kind, resolution = "", "number", plan.resolution

@@ -99,10 +99,7 @@ def last_digit(cells: Sequence[str], decimal: str) -> float:
             step = 10.0 ** ((int(exponent) if exponent else 0) - digits)
         except (ValueError, OverflowError):
             continue
-        if exponent:
-            finest = max(finest or 0.0, step)
-        else:
-            finest = min(finest if finest is not None else step, step)
+        finest = max(finest or 0.0, step) if exponent else min(step if finest is None else finest, step)
     return finest if finest is not None else 0.0
 
 
@@ -187,7 +184,8 @@ def plan_time(layout: Layout, rows: Sequence[tuple[int, Sequence[str]]], told: T
     if timed or bare:
         return _joined([*timed, *(place for place in bare if place not in timed)], layout, rows, told, notes)
     if clocks:
-        chosen = next((place for place in clocks if _TIME.match(layout.names[place])), clocks[0])
+        told_time = [place for place in clocks if any(":" in cells[place] for _, cells in rows[:20])] or clocks
+        chosen = next((place for place in told_time if _TIME.match(layout.names[place])), told_time[0])
         return TimePlan(kind="text", columns=_with_date(chosen, layout))
     if named:
         return _joined(named, layout, rows, told, notes)
