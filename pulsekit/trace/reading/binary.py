@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import hashlib
 import io
 import re
 import tempfile
@@ -17,7 +16,7 @@ import numpy as np
 from ..recording import Recording
 from .channels import Channel, build_channels
 from .formats import optional
-from .source import Source
+from .source import Source, digest_of
 from .told import Notes, Told, clean
 
 __all__ = ["read_edf", "read_mat", "read_mf4", "read_parquet", "read_tdms", "read_wav"]
@@ -25,14 +24,6 @@ __all__ = ["read_edf", "read_mat", "read_mf4", "read_parquet", "read_tdms", "rea
 _LARGEST = 4_000_000_000
 _RATE_NAME = re.compile(r"(?i)^(fs|f_s|sample_?rate|sampling_?rate|sampling_?frequency|rate|sr)$")
 _STEP_NAME = re.compile(r"(?i)^(dt|delta_?t|sample_?interval|tinterval|interval)$")
-
-
-def _digest(source: Source) -> str:
-    digest = hashlib.sha256()
-    with source.open() as file:
-        while block := file.read(1 << 20):
-            digest.update(block)
-    return digest.hexdigest()
 
 
 @contextmanager
@@ -95,7 +86,7 @@ def read_mat(source: Source, told: Told, notes: Notes) -> Recording:
             if table.shape[1] > 200:
                 raise notes.refuse(f"variable {clean(name)!r} is a matrix of {array.shape}: too many columns for a recording")
             channels += [Channel(f"{name} {place + 1}", np.asarray(table[:, place], float), None) for place in range(table.shape[1])]
-    return build_channels(channels, source, told, notes, _digest(source), "mat", rate=rate)
+    return build_channels(channels, source, told, notes, digest_of(source), "mat", rate=rate)
 
 
 def read_parquet(source: Source, told: Told, notes: Notes) -> Recording:
@@ -121,7 +112,7 @@ def read_parquet(source: Source, told: Told, notes: Notes) -> Recording:
             channels.append(Channel(name, series.to_numpy(float), unit.decode("utf-8", "replace") if unit else None))
         else:
             notes.add(f"Column {clean(name)!r} holds no numbers: left aside.")
-    return build_channels(channels, source, told, notes, _digest(source), "parquet")
+    return build_channels(channels, source, told, notes, digest_of(source), "parquet")
 
 
 def read_tdms(source: Source, told: Told, notes: Notes) -> Recording:
@@ -157,7 +148,7 @@ def read_tdms(source: Source, told: Told, notes: Notes) -> Recording:
                         origin=str(channel.properties.get("wf_start_time", "")),
                     )
                 )
-    return build_channels(channels, source, told, notes, _digest(source), "tdms")
+    return build_channels(channels, source, told, notes, digest_of(source), "tdms")
 
 
 def read_edf(source: Source, told: Told, notes: Notes) -> Recording:
@@ -177,7 +168,7 @@ def read_edf(source: Source, told: Told, notes: Notes) -> Recording:
                 zip(file.getSignalLabels(), [file.getPhysicalDimension(n) for n in range(file.signals_in_file)], strict=True)
             )
         ]
-    return build_channels(channels, source, told, notes, _digest(source), "edf")
+    return build_channels(channels, source, told, notes, digest_of(source), "edf")
 
 
 def read_mf4(source: Source, told: Told, notes: Notes) -> Recording:
@@ -197,7 +188,7 @@ def read_mf4(source: Source, told: Told, notes: Notes) -> Recording:
                         signal.name, np.asarray(signal.samples, float), signal.unit or None, stamps=np.asarray(signal.timestamps, float)
                     )
                 )
-    return build_channels(channels, source, told, notes, _digest(source), "mf4")
+    return build_channels(channels, source, told, notes, digest_of(source), "mf4")
 
 
 def read_wav(source: Source, told: Told, notes: Notes) -> Recording:
@@ -213,4 +204,4 @@ def read_wav(source: Source, told: Told, notes: Notes) -> Recording:
     scale = f"whole numbers up to {np.iinfo(values.dtype).max}" if values.dtype.kind in "iu" else "numbers of full scale 1"
     notes.add(f"The sound file holds {scale} without a unit: values as written; give a calibration.")
     channels = [Channel(name, np.ascontiguousarray(table[:, place]), None, step=1 / float(rate)) for place, name in enumerate(names)]
-    return build_channels(channels, source, told, notes, _digest(source), "wav")
+    return build_channels(channels, source, told, notes, digest_of(source), "wav")

@@ -29,7 +29,7 @@ def head_lines(source: Source, encoding: str, told: Told, notes: Notes) -> list[
     lines = _joined_quotes(lines)
     if not any(line.strip() for line in lines):
         raise notes.refuse("the file holds no text")
-    return lines[:4000]
+    return lines[:2000]
 
 
 def _two(source: Source, encoding: str, told: Told, notes: Notes, size: int) -> Iterator[bytes]:
@@ -40,16 +40,16 @@ def _two(source: Source, encoding: str, told: Told, notes: Notes, size: int) -> 
 
 
 def _joined_quotes(lines: list[str]) -> list[str]:
-    """A header cell may hold a line end within quotes: join it, and keep the count of lines with blank ones."""
-    out: list[str] = []
-    held = ""
-    skipped = 0
-    for order, line in enumerate(lines[:200]):
-        held = f"{held} {line}" if held else line
-        if held.count('"') % 2 and order < 199 and skipped < 5:
-            skipped += 1
-            continue
-        out += [""] * skipped
-        out.append(held)
-        held, skipped = "", 0
-    return out + ([held] if held else []) + lines[200:]
+    """A header cell may hold line ends within quotes: join it, and keep the count of lines with blank ones."""
+    out = lines[:]
+    place = 0
+    while place < min(len(lines), 200):
+        if lines[place].count('"') % 2:
+            for more in range(1, 6):
+                joined = " ".join(lines[place : place + more + 1])
+                if joined.count('"') % 2 == 0 and place + more < len(lines) and not lines[place][:1].isdigit():
+                    out[place : place + more + 1] = [""] * more + [joined]
+                    place += more
+                    break
+        place += 1
+    return out

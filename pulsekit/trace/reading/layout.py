@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import csv
+import re
 from collections import Counter
 from collections.abc import Sequence
 from dataclasses import dataclass, field
@@ -40,7 +41,7 @@ class Layout:
     @property
     def shown_delimiter(self) -> str:
         """Delimiter as told to a person."""
-        return _SHOWN.get(self.delimiter, self.delimiter)
+        return _SHOWN.get(self.delimiter, repr(self.delimiter))
 
 
 def split_line(line: str, delimiter: str) -> list[str]:
@@ -151,7 +152,8 @@ def table_shape(lines: Sequence[str], told: Told, notes: Notes) -> Layout | None
                 line=number,
             )
     candidates = (told.delimiter,) if told.delimiter else _CANDIDATES
-    tried = [found for mark in candidates if (found := _try(lines, mark, told.decimal))]
+    few = lines[:600] if any(kind_of(cell, None) == NUMBER for cell in re.split(r"[;,\t| ]+", lines[min(599, len(lines) - 1)])) else lines
+    tried = [found for mark in candidates if (found := _try(few, mark, told.decimal))]
     if not tried:
         return None
     best = max(found[0] for found in tried)

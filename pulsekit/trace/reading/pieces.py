@@ -26,6 +26,7 @@ class Piece:
     first_line: int
     last: bool
     ended: bool
+    lines: int = -1  # line ends in it, -1 if not counted
 
 
 def pieces(
@@ -59,8 +60,9 @@ def pieces(
             if piece or last:
                 if decoder is None and not piece.isascii():
                     piece = _checked(piece, line, notes)
-                yield Piece(piece, line, last, piece.endswith((b"\n", b"\r")))
-                line += _line_ends(piece)
+                ends = _line_ends(piece)
+                yield Piece(piece, line, last, piece.endswith((b"\n", b"\r")), ends)
+                line += ends
             told.pause(notes.where, done / max(source.size, 1))
             if last:
                 return

@@ -3,13 +3,14 @@
 from __future__ import annotations
 
 from collections.abc import Callable, Mapping, Sequence
+from dataclasses import replace
 from typing import Any
 
 from ..recording import Recording
 from .formats import kind_of_bytes, read_packed_format
-from .source import open_source, unpacked
+from .source import Source, digest_of, open_source, unpacked
 from .textread import read_text
-from .told import Notes, make_told
+from .told import Notes, Told, make_told
 
 __all__ = ["read_recording"]
 
@@ -80,14 +81,20 @@ def read_recording(
     opened = open_source(source)
     notes = Notes(opened.name)
     told.pause(notes.where, 0.0)
-    head = opened.part(0, 1024)
-    kind = kind_of_bytes(opened.name, head, notes)
-    if kind == "gz":
-        opened = unpacked(opened, told, notes)
-        head = opened.part(0, 1024)
-        kind = kind_of_bytes(opened.name, head, notes)
+    kind = kind_of_bytes(opened.name, opened.part(0, 1024), notes)
+    if kind != "gz":
+        return _read(kind, opened, told, notes)
+    plain = unpacked(opened, told, notes)
+    try:
+        kind = kind_of_bytes(plain.name, plain.part(0, 1024), notes)
         if kind == "gz":
             raise notes.refuse("the file is packed twice; unpack it yourself, then read the plain file")
-    recording = read_text(opened, told, notes) if kind == "text" else read_packed_format(kind, opened, told, notes)
+        return replace(_read(kind, plain, told, notes), path=opened.path or opened.name, sha256=digest_of(opened))
+    finally:
+        plain.close()
+
+
+def _read(kind: str, source: Source, told: Told, notes: Notes) -> Recording:
+    recording = read_text(source, told, notes) if kind == "text" else read_packed_format(kind, source, told, notes)
     told.pause(notes.where, 1.0)
     return recording

@@ -91,12 +91,12 @@ class RowReader:
             self._clean(text[:whole], piece.first_line)
             self._by_cell(text[whole:], piece.first_line + (text[:whole].count(b"\n") or text[:whole].count(b"\r")), unended=True)
             return
-        self._clean(text, piece.first_line)
+        self._clean(text, piece.first_line, piece.lines if piece.ended else -1)
 
-    def _clean(self, text: bytes, line: int) -> None:
-        if not text.strip():
+    def _clean(self, text: bytes, line: int, lines: int = -1) -> None:
+        if not text or text.isspace():
             return
-        if self._fast(text, line) or self._with_blanks(text, line):
+        if self._fast(text, line, lines) or self._with_blanks(text, line):
             return
         if len(text) > 2 * _SPLIT and b"\n" in text:
             begin = 0
@@ -124,7 +124,7 @@ class RowReader:
         except _PARSE_TROUBLE:
             return None
 
-    def _fast(self, text: bytes, line: int) -> bool:
+    def _fast(self, text: bytes, line: int, lines: int) -> bool:
         """Every cell of the stored columns is a number: nothing to think about."""
         if self.layout.suffixed or not self.stored:
             return False
@@ -134,7 +134,10 @@ class RowReader:
         values = {place: frame[place].to_numpy() for place in self.stored}
         if not all(np.isfinite(column).all() for column in values.values()):
             return False
-        if len(frame) != _filled_lines(text) or not self._square(text, len(frame)):
+        if len(frame) != (lines if lines >= 0 else _lines(text)) and len(frame) != _filled_lines(text):
+            return False
+        # A short line would leave the last number without text, which the parser refuses.
+        if self.layout.width - 1 not in self.stored and not self._square(text, len(frame)):
             return False
         texts = {place: frame[place].tolist() for place in self.texts}
         if any(classify(cell) != CLOCK for column in texts.values() for cell in column):
@@ -147,8 +150,7 @@ class RowReader:
         if self.layout.suffixed or self.layout.delimiter in ("", " ") or not self.stored:
             return False
         frame = self._parse(text, na_values=_MARKERS, keep_default_na=False)
-        lines = text.count(b"\n") or text.count(b"\r")
-        if frame is None or not len(frame) or len(frame) != lines + (not text.endswith((b"\n", b"\r"))):
+        if frame is None or not len(frame) or len(frame) != _lines(text):
             return False
         if not self._square(text, len(frame)):
             return False
@@ -316,13 +318,15 @@ class RowReader:
             self.notes.add(f"The last line ({self.cut[0]}) was cut: {clean(self.cut[1], 40)!r} is no whole row and was left out.")
 
 
-def _filled_lines(text: bytes) -> int:
-    """Count the lines that are not empty (quick where none is)."""
+def _lines(text: bytes) -> int:
+    """Count the lines."""
     mark = b"\n" if b"\n" in text else b"\r"
-    count = text.count(mark) + (not text.endswith(mark))
-    if b"\n\n" in text or b"\n\r" in text or b"\r\r" in text or text.startswith((b"\n", b"\r")) or b"\n " in text or b" \n" in text:
-        return sum(1 for line in text.splitlines() if line.strip())
-    return count
+    return text.count(mark) + (not text.endswith(mark))
+
+
+def _filled_lines(text: bytes) -> int:
+    """Count the lines that are not empty."""
+    return sum(1 for line in text.splitlines() if line.strip())
 
 
 def _lines_of(text: bytes) -> list[str]:

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import hashlib
 import io
 import stat
 import tempfile
@@ -14,7 +15,7 @@ from typing import IO, Any
 from ...errors import InputError, MissingFileError
 from .told import Notes, Told, clean
 
-__all__ = ["LARGEST_UNPACKED", "Source", "open_source", "unpacked"]
+__all__ = ["LARGEST_UNPACKED", "Source", "digest_of", "open_source", "unpacked"]
 
 #: A packed file is refused beyond this size, and beyond this ratio once it is large. [bytes], [-]
 LARGEST_UNPACKED = 4_000_000_000
@@ -42,11 +43,25 @@ class Source:
             return io.BytesIO(self.data)
         return Path(self.path).open("rb")
 
+    def close(self) -> None:
+        """Give back what was unpacked."""
+        if self.unpacked is not None:
+            self.unpacked.close()
+
     def part(self, begin: int, length: int) -> bytes:
         """Return ``length`` bytes from ``begin`` on, fewer at the end."""
         with self.open() as file:
             file.seek(max(begin, 0))
             return file.read(length)
+
+
+def digest_of(source: Source) -> str:
+    """Return the SHA-256 of the bytes."""
+    digest = hashlib.sha256()
+    with source.open() as file:
+        while block := file.read(_STEP):
+            digest.update(block)
+    return digest.hexdigest()
 
 
 class _Kept(io.BufferedIOBase):
@@ -125,7 +140,16 @@ def _from_path(path: str | Path) -> Source:
 
 def unpacked(source: Source, told: Told, notes: Notes) -> Source:
     """Unpack gzip into a temporary file, within bounds of size and ratio."""
-    out = tempfile.SpooledTemporaryFile(max_size=_SMALL)  # noqa: SIM115 - it lives as long as the source
+    out: IO[bytes] = io.BytesIO()
+    try:
+        size, out = _unpack(source, out, told, notes)
+    except BaseException:
+        out.close()
+        raise
+    return Source(name=source.name.removesuffix(".gz"), size=size, path="", unpacked=out)
+
+
+def _unpack(source: Source, out: IO[bytes], told: Told, notes: Notes) -> tuple[int, IO[bytes]]:
     size = taken = 0
     unpacker = zlib.decompressobj(wbits=31)
     with source.open() as file:
@@ -146,10 +170,13 @@ def unpacked(source: Source, told: Told, notes: Notes) -> Source:
                 raise notes.refuse(f"the packed file is damaged ({problem}); unpack it with another tool, or export it again") from problem
             size += len(plain)
             out.write(plain)
+            if size > _SMALL and isinstance(out, io.BytesIO):
+                moved = tempfile.TemporaryFile()  # noqa: SIM115 - it lives as long as the source
+                moved.write(out.getvalue())
+                out = moved
             if size > LARGEST_UNPACKED or (size > _SMALL and size > _LARGEST_RATIO * max(source.size, 1)):
                 raise notes.refuse(
                     f"the packed file of {source.size} bytes grows beyond {size} bytes; unpack it yourself if you trust it, then read the plain file"
                 )
             told.pause(notes.where, 0.5 * taken / max(source.size, 1))
-    name = source.name.removesuffix(".gz")
-    return Source(name=name, size=size, unpacked=out)  # type: ignore[arg-type]
+    return size, out

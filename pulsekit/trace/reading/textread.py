@@ -18,7 +18,7 @@ from .grammar import BLANK, CLOCK, NUMBER, TEXT
 from .head import head_lines
 from .header import read_header
 from .layout import Layout, data_cells, find_suffixes, table_shape
-from .pieces import pieces
+from .pieces import Piece, pieces
 from .rows import Grown, RowReader, fixed_decimals
 from .source import Source
 from .stamps import StampStore, settle, shown_time
@@ -49,6 +49,8 @@ def read_text(source: Source, told: Told, notes: Notes) -> Recording:
         )
     layout.encoding = encoding
     rows = data_cells(lines, layout)
+    if len(rows) < 2:
+        raise notes.refuse("there is one row of numbers only: a recording needs at least two", line=rows[0][0] if rows else None)
     layout.quoted = any('"' in line for line in lines[layout.first :])
     rows = find_suffixes(layout, rows)
     settle_marks(source, layout, rows, told, notes)
@@ -153,7 +155,7 @@ class _Reading:
                 text = _without_head(text, layout.first)
                 line = layout.first + 1
             done += len(piece.text)
-            self.reader.take(type(piece)(text, line, piece.last, piece.ended))
+            self.reader.take(Piece(text, line, piece.last, piece.ended, piece.lines - (line - piece.first_line)))
             if not self.expected and source.size > 4 * len(piece.text) and self.reader.rows:
                 self.expected = int(1.02 * source.size / max(done, 1) * self.reader.rows)
         if not self.reader.rows:
