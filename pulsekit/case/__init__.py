@@ -1,6 +1,9 @@
 """The question as one value, and the one way from question to answer."""
 
+from .analyse import analyse
+from .answer import Answer, Band
 from .case import Case, PumpLineCase, WallShearCase
 from .files import case_from_toml, load_case
+from .workspace import Workspace
 
-__all__ = ["Case", "PumpLineCase", "WallShearCase", "case_from_toml", "load_case"]
+__all__ = ["Answer", "Band", "Case", "PumpLineCase", "WallShearCase", "Workspace", "analyse", "case_from_toml", "load_case"]
