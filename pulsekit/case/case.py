@@ -5,7 +5,7 @@ from __future__ import annotations
 import copy
 import math
 from collections.abc import Mapping
-from dataclasses import dataclass, field
+from dataclasses import dataclass
 from pathlib import Path
 from typing import Any
 
@@ -16,37 +16,58 @@ from .schema import KEYS, Key, key_of, nearest, plain_key, sections_of
 __all__ = ["Case", "PumpLineCase", "WallShearCase", "make_case"]
 
 
-@dataclass(frozen=True, eq=False)
+@dataclass(frozen=True, eq=False, init=False)
 class Case:
     """A question with all that is needed to answer it.
 
-    ``data`` holds the keys of the case file as they are written. A dotted key reaches each of them
-    (``tube.radius``, ``element.0.length``); `with_value` and `without` return a changed case.
+    A dotted key reaches each key of the case file (``tube.radius``, ``element.0.length``); `with_value` and
+    `without` return a changed case.
+
+    Parameters
+    ----------
+    data : mapping, optional
+        The keys of the case file, sections as nested mappings, values as they are written there.
+    folder : path
+        Relative names of recordings start here.
+    path : path, optional
+        Of the case file, for errors.
+    **sections
+        Sections by name, in place of or beside ``data``; ``recording`` may be just the name of a file.
+
+    Raises
+    ------
+    CaseError, InputError
+        If a key does not exist or its value is not acceptable.
 
     Examples
     --------
-    >>> case = WallShearCase({"tube": {"radius": "3.1 mm ± 5 %"}})
+    >>> case = WallShearCase(recording="run12.csv", tube={"radius": "3.1 mm ± 5 %"})
     >>> case.given("tube.radius").value
     0.0031
     >>> case.with_value("tube.radius", "3.2 mm").get("tube.radius")
     '3.2 mm'
     """
 
-    data: Mapping[str, Any] = field(default_factory=dict)
-    folder: Path = field(default_factory=Path)
-    path: Path | None = None
+    data: Mapping[str, Any]
+    folder: Path
+    path: Path | None
 
     kind = ""
 
-    def __post_init__(self) -> None:
-        data = copy.deepcopy(dict(self.data))
+    def __init__(
+        self, data: Mapping[str, Any] | None = None, folder: str | Path = ".", path: Path | None = None, **sections: Any
+    ) -> None:  # fmt: skip
+        object.__setattr__(self, "path", path)
+        data = {name: plain_value(value) for name, value in {**(data or {}), **sections}.items()}
+        if isinstance(data.get("recording"), str):
+            data["recording"] = {"file": data["recording"]}
         stated = data.setdefault("kind", self.kind)
         if stated != self.kind:
             raise CaseError(f"kind = {stated!r} does not belong to a case of kind {self.kind!r}", key="kind", value=stated, path=self.path)
         ordered = {"kind": data.pop("kind")} | data
         _check_table(ordered, "", self.kind, self.path)
         object.__setattr__(self, "data", ordered)
-        object.__setattr__(self, "folder", Path(self.folder))
+        object.__setattr__(self, "folder", Path(folder))
 
     def to_dict(self) -> dict[str, Any]:
         """Return a copy of the keys as nested dicts and lists."""
@@ -192,6 +213,27 @@ def make_case(data: Mapping[str, Any], *, folder: str | Path = ".", path: Path |
         stated = f"kind = {kind!r} is not one of" if kind is not None else "the case does not say its kind;"
         raise CaseError(f'{path or "the case"}: {stated} kind = "wall shear" or kind = "pump line"', key="kind", value=kind, path=path)
     return kinds[str(kind)](data, Path(folder), path)
+
+
+def plain_value(value: Any) -> Any:
+    """Return a value as a case file can hold it: plain copies, quantities and paths as text.
+
+    >>> plain_value({"radius": Path("a") / "b.csv"})["radius"]
+    'a/b.csv'
+    """
+    if isinstance(value, Mapping):
+        return {str(name): plain_value(entry) for name, entry in value.items()}
+    if isinstance(value, (list, tuple)):
+        return [plain_value(entry) for entry in value]
+    if isinstance(value, Path):
+        return value.as_posix()
+    if isinstance(value, Given):
+        return value.text
+    if hasattr(value, "magnitude") and hasattr(value, "units"):
+        return f"{value.magnitude} {value.units}"
+    if hasattr(value, "item") and getattr(value, "ndim", None) == 0:
+        return value.item()
+    return plain_value(value.tolist()) if hasattr(value, "tolist") else value
 
 
 def _index(place: list[Any], word: str, dotted: str, *, grow: bool = False) -> int:

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import os
+import re
 import tempfile
 import tomllib
 from pathlib import Path
@@ -64,22 +65,59 @@ def case_from_toml(text: str, *, folder: str | Path = ".", path: Path | None = N
         raise CaseError(f"{path or 'the case'} is not valid TOML: {problem}", path=path) from problem
     try:
         return make_case(data, folder=folder, path=path)
-    except CaseError as problem:
-        line = _line_of(text, problem.key)
+    except InputError as problem:
+        dotted = getattr(problem, "key", None) or problem.name
+        line = line_of(text, dotted)
         if line is None or path is None:
             raise
-        raise CaseError(
-            str(problem).replace(f"{path}: ", f"{path}, line {line}: ", 1), key=problem.key, value=problem.value, path=path, line=line
-        ) from problem
+        sentence = str(problem).replace(f"{path}: ", f"{path}, line {line}: ", 1)
+        if isinstance(problem, CaseError):
+            raise CaseError(sentence, name=dotted, value=problem.value, path=path, key=dotted, line=line) from problem
+        raise type(problem)(sentence, **problem.details) from problem
 
 
-def _line_of(text: str, dotted: str | None) -> int | None:
-    """Line at which the last word of a dotted key is set, if that is the only place."""
+def line_of(text: str, dotted: str | None) -> int | None:
+    """Line at which a dotted key (or section) of a case file stands, or None.
+
+    >>> line_of('kind = "pump line"\\n[[element]]\\n[[element]]\\nlength = "2 m"', "element.1.length")
+    4
+    """
     if not dotted:
         return None
-    word = dotted.rpartition(".")[2]
-    found = [number for number, line in enumerate(text.splitlines(), 1) if line.split("=")[0].strip().strip("[]") == word]
-    return found[0] if len(found) == 1 else None
+    counts: dict[str, int] = {}
+    places: dict[str, int] = {}
+    section = ""
+    for number, line in enumerate(text.splitlines(), 1):
+        bare = line.strip()
+        if match := re.match(r"\[\[\s*([\w.-]+)\s*\]\]", bare):
+            name = _numbered(match[1], counts)
+            counts[name] = counts.get(name, -1) + 1
+            section = f"{name}.{counts[name]}"
+            places.setdefault(name, number)
+        elif match := re.match(r"\[\s*([\w.-]+)\s*\]", bare):
+            section = _numbered(match[1], counts)
+        elif match := re.match(r"([\w.-]+|\"[^\"]*\")\s*=", bare):
+            key = match[1].strip('"')
+            places.setdefault(f"{section}.{key}" if section else key, number)
+            continue
+        else:
+            continue
+        places.setdefault(section, number)
+    while dotted and dotted not in places:
+        dotted = dotted.rpartition(".")[0]
+    return places.get(dotted) if dotted else None
+
+
+def _numbered(name: str, counts: dict[str, int]) -> str:
+    """Name of a table with the number of the list entry that it belongs to: element.end -> element.1.end."""
+    parts: list[str] = []
+    words = name.split(".")
+    for position, word in enumerate(words):
+        parts.append(word)
+        so_far = ".".join(parts)
+        if so_far in counts and position < len(words) - 1:
+            parts.append(str(counts[so_far]))
+    return ".".join(parts)
 
 
 def save_case(case: Case, path: str | Path) -> Path:
@@ -91,6 +129,7 @@ def save_case(case: Case, path: str | Path) -> Path:
     if place.is_dir():
         raise InputError(f"{place} is a folder; give a file name, such as {place / 'case.toml'}", name="path", value=str(path))
     moved = type(case)(_moved(case.to_dict(), case.folder.resolve(), place.parent.resolve()), place.parent, place)
+    hidden = ""
     try:
         place.parent.mkdir(parents=True, exist_ok=True)
         handle, hidden = tempfile.mkstemp(prefix=f".{place.name}-", dir=place.parent)
@@ -99,6 +138,8 @@ def save_case(case: Case, path: str | Path) -> Path:
         Path(hidden).chmod(0o644)
         os.replace(hidden, place)
     except OSError as problem:
+        if hidden:
+            Path(hidden).unlink(missing_ok=True)
         raise InputError(f"the case cannot be written to {place}: {problem.strerror}; choose another place", name="path", value=str(path)) from problem
     return place
 
