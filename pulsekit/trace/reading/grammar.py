@@ -199,6 +199,9 @@ def suffix_of(cell: str) -> tuple[str, str] | None:
 
 
 def is_comment(line: str) -> bool:
-    """Tell whether a line is marked as a comment."""
+    """Tell whether a line is marked as a comment (a first cell '#N/A' or '--' is no such mark)."""
     text = line.lstrip()
-    return text.startswith(_COMMENT) and not _STARS.match(text.split(None, 1)[0] if text.split() else "") and text.strip("-") != ""
+    if not text.startswith(_COMMENT):
+        return False
+    first = re.split(r"[\s,;|]", text, maxsplit=1)[0]
+    return classify(first) not in (MISSING, OVERFLOW)

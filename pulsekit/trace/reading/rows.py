@@ -81,6 +81,7 @@ class RowReader:
     odd_text: dict[int, list[tuple[int, str]]] = field(default_factory=dict)
     bad_count: int = 0
     fixed: dict[int, int] = field(default_factory=dict)  # columns written with a fixed number of decimals
+    counted: bool = False  # time is counted by rows: a damaged row keeps its place
     cut: tuple[int, str] | None = None  # the last line, if it was cut
 
     def take(self, piece: Piece) -> None:
@@ -215,6 +216,8 @@ class RowReader:
                 continue
             cells = split_line(raw, layout.delimiter)
             row = self._row(cells, at, unended)
+            if row is None and self.counted and not unended and raw.lstrip()[:1] in "0123456789+-.,":
+                row = self._damaged(raw, at)
             if row is None:
                 flush()
                 self._bad_line(raw, cells, at, unended)
@@ -264,9 +267,9 @@ class RowReader:
             row[place] = value if np.isfinite(value) else float("nan")
         if unended and any(decimals_of(cells[place], layout.decimal or ".") < count for place, count in self.fixed.items()):
             return None
-        if (odd and (len(odd) >= max(1, len(self.stored) - 1) or numbers == 0)) or (unended and (lost or odd)):
+        if (odd and (len(odd) >= max(1, len(self.stored) - 1) or numbers == 0)) or (unended and (odd or self._ends_blank(cells))):
             return None
-        if not numbers and not any("overflow" in what for _, what in lost) and not self.texts:
+        if not numbers and not any("overflow" in what for _, what in lost) and not self.texts and not self.counted:
             return None
         for place, what in lost:
             self._lost(place, what, line)
@@ -274,13 +277,24 @@ class RowReader:
             self._lost(place, f"text {clean(what, 20)!r}", line)
         return row
 
+    def _damaged(self, raw: str, line: int) -> dict[int, float]:
+        """A line that was a row once: its place in the count is kept, its numbers are not."""
+        for place in self.stored:
+            self._lost(place, f"damaged row {clean(raw, 20)!r}", line)
+        return dict.fromkeys(self.stored, float("nan"))
+
+    def _ends_blank(self, cells: list[str]) -> bool:
+        """Tell whether the last column of numbers is without text: the line may have been cut there."""
+        places = [place for place, kind in enumerate(self.layout.kinds) if kind == NUMBER]
+        return bool(places) and classify(cells[places[-1]], self.layout.decimal) == BLANK
+
     def _bad_line(self, raw: str, cells: list[str], line: int, unended: bool) -> None:
         layout = self.layout
         if layout.header_cells and [plain(cell) for cell in cells][: len(layout.header_cells)] == layout.header_cells:
             self.restarts.append((self.rows, line))
             self.tail = [item for item in self.tail if line - item[0] > 60]  # the preamble of the restart
             return
-        if unended and len(cells) <= layout.width:
+        if unended and len(cells) <= layout.width and raw.lstrip()[:1] in "0123456789+-.,\"":
             self.cut = (line, raw)
             return
         if len(self.tail) < 20_000:

@@ -147,7 +147,7 @@ class _Reading:
         source, layout, notes = self.source, self.layout, self.notes
         digest = hashlib.sha256()
         fixed = fixed_decimals(self.rows, self.stored, layout.decimal or ".")
-        self.reader = RowReader(layout=layout, notes=notes, stored=self.stored, texts=self.texts, sink=self._sink, fixed=fixed)
+        self.reader = RowReader(layout=layout, notes=notes, stored=self.stored, texts=self.texts, sink=self._sink, fixed=fixed, counted=self.plan.kind == "rate")
         done = 0
         for piece in pieces(source, layout.encoding, self.told, notes, digest=digest, quoted=layout.quoted):
             text, line = piece.text, piece.first_line

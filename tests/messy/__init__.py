@@ -1,0 +1,1 @@
+"""Writers of messy files with a known truth."""
