@@ -6,7 +6,7 @@ givens and every Monte Carlo sample go through the same steps.
 
 from __future__ import annotations
 
-from collections.abc import Callable, Mapping, Sequence
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, field
 from typing import Any
 
@@ -17,22 +17,12 @@ from ..errors import CaseError, InputError
 from ..exact.womersley import flow_factor
 from ..quantities import Given
 from ..trace import Harmonics, decompose
-from ..trace.channel import (
-    butterworth_response,
-    delay_response,
-    frame_response,
-    high_pass_response,
-    second_order_response,
-    usable_orders,
-)
 from .case import Case
+from .instrument import Step, Values, added_to_mean, instrument_steps, orders_of, pair_steps, sampled
 from .signals import Gathered, gather
 from .workspace import Workspace, part_key
 
 __all__ = ["Measurement", "measure"]
-
-Values = Mapping[str, Any]
-Step = Callable[[NDArray[np.complex128], Values, float], NDArray[np.complex128]]
 
 
 @dataclass(frozen=True, eq=False, kw_only=True)
@@ -82,7 +72,9 @@ def measure(case: Case, workspace: Workspace, *, progress: Any = None, stop: Any
     steps: list[Step] = []
     givens: dict[str, Given] = {}
     remarks: list[str] = []
-    raw = _instrument(case, raw, steps, givens, remarks)
+    if gathered.pair is not None:
+        raw = pair_steps(case, gathered.pair, gathered.sections, cycles, raw, steps, givens, remarks)
+    raw = instrument_steps(case, raw, steps, givens, remarks)
     _scale_and_offset(case, gathered, steps, givens)
     _doppler(case, quantity, steps, givens, remarks)
     quantity, mean_known = _to_solved(case, quantity, gathered, steps, givens, remarks)
@@ -98,86 +90,21 @@ def _decomposed(case: Case, gathered: Gathered) -> tuple[Any, Harmonics]:
     return cycles, decompose(cycles, count=None if count is None else int(count), weights=gathered.weights)
 
 
-def _orders(coefficients: NDArray[np.complex128]) -> NDArray[np.float64]:
-    return np.arange(coefficients.shape[-1], dtype=float)
-
-
-def _column(value: Any) -> Any:
-    """A sampled value beside the harmonic axis; a plain number as it is."""
-    array = np.asarray(value, dtype=float)
-    return array[..., None] if array.ndim else array
-
-
-def _instrument(case: Case, raw: Harmonics, steps: list[Step], givens: dict[str, Given], remarks: list[str]) -> Harmonics:
-    """Undo frames, filters and delay, up to a gain of 3; harmonics beyond are dropped and said."""
-    responses: list[tuple[str, Callable[[NDArray[np.float64], Values, float], Any]]] = []
-
-    def take(name: str) -> str:
-        key = f"recording.{name}"
-        givens[key] = case.given(key)
-        return key
-
-    if case.get("recording.averaged_over") is not None:
-        over, stamp = take("averaged_over"), str(case.get("recording.stamp") or "middle")
-        responses.append(
-            (f"the mean over {case.get(over)} in each sample", lambda n, v, f: frame_response(n, _column(v[over]), 1 / f, stamp=stamp))
-        )
-    if case.get("recording.low_pass") is not None:
-        corner, order = take("low_pass"), int(case.get("recording.low_pass_order") or 2)
-        responses.append((f"the low-pass filter of {case.get(corner)}", lambda n, v, f: butterworth_response(n * f, _column(v[corner]), order)))
-    if case.get("recording.natural_frequency") is not None:
-        own, damping = take("natural_frequency"), take("damping_ratio")
-        responses.append(
-            (
-                f"the transducer line of natural frequency {case.get(own)}",
-                lambda n, v, f: second_order_response(n * f, _column(v[own]), _column(v[damping])),
-            )
-        )
-    if case.get("recording.high_pass") is not None:
-        low = take("high_pass")
-        # The mean is not passed at all; what stands there is replaced later, so it is left as it is.
-        responses.append((f"the AC coupling of {case.get(low)}", lambda n, v, f: np.where(n == 0, 1.0, high_pass_response(n * f, _column(v[low])))))
-    nominal = {key: given.value for key, given in givens.items()}
-    orders = np.arange(raw.count + 1, dtype=float)
-    for words, response in responses:
-        usable = usable_orders(np.broadcast_to(response(orders, nominal, raw.frequency), orders.shape))
-        said = f"{words[0].upper()}{words[1:]} was undone per harmonic"
-        if usable < raw.count:
-            said += f"; harmonics above {usable} would have been magnified more than threefold and were dropped"
-            raw, orders = raw.truncated(usable), orders[: usable + 1]
-        remarks.append(said + ".")
-        steps.append(lambda c, v, f, response=response: c / response(_orders(c), v, f))  # type: ignore[misc]
-    if case.get("recording.delay") is not None:
-        delay = take("delay")
-        steps.append(lambda c, v, f: c / delay_response(_orders(c) * f, _column(v[delay])))
-        remarks.append(f"The record's delay of {case.get(delay)} was undone.")
-    return raw
-
-
 def _scale_and_offset(case: Case, gathered: Gathered, steps: list[Step], givens: dict[str, Given]) -> None:
     """Scale and offset of the calibration: 1 and 0, uncertain."""
     scale = case.maybe("recording.scale_uncertainty")
     if scale is not None:
         givens["recording.scale_uncertainty"] = Given(value=1.0, standard_uncertainty=scale.value, stated=True, text=f"1 ± {scale.value:g}")
-        steps.append(lambda c, v, f: c * _column(v["recording.scale_uncertainty"]))
+        steps.append(lambda c, v, f: c * sampled(v["recording.scale_uncertainty"]))
     offset = case.maybe("recording.offset_uncertainty", gathered.dimension)
     if offset is not None:
         givens["recording.offset_uncertainty"] = Given(
             value=0.0, standard_uncertainty=offset.value, stated=True, dimension=gathered.dimension, text=f"0 ± {offset.value:g}"
         )
-        steps.append(_added_to_mean("recording.offset_uncertainty"))
+        steps.append(added_to_mean("recording.offset_uncertainty"))
     for key, given in gathered.givens.items():
         givens[key] = given
     steps.extend(gathered.steps)
-
-
-def _added_to_mean(key: str, sign: float = 1.0) -> Step:
-    def step(coefficients: NDArray[np.complex128], values: Values, frequency: float) -> NDArray[np.complex128]:
-        out = coefficients.copy()
-        out[..., 0] += sign * np.asarray(values[key])
-        return out
-
-    return step
 
 
 def _doppler(case: Case, quantity: str, steps: list[Step], givens: dict[str, Given], remarks: list[str]) -> None:
@@ -187,17 +114,17 @@ def _doppler(case: Case, quantity: str, steps: list[Step], givens: dict[str, Giv
         key = "recording.doppler_angle"
         givens[key] = angle
         if case.get("recording.angle_corrected") is False:
-            steps.append(lambda c, v, f: c / np.cos(_column(v[key])))
+            steps.append(lambda c, v, f: c / np.cos(sampled(v[key])))
             remarks.append(f"Velocities along the beam were divided by the cosine of {case.get(key)}.")
         else:
             fixed = float(np.cos(angle.value))
-            steps.append(lambda c, v, f: c * (fixed / np.cos(_column(v[key]))))
+            steps.append(lambda c, v, f: c * (fixed / np.cos(sampled(v[key]))))
             remarks.append(f"Velocities were taken as corrected for {case.get(key)}; the angle enters by its uncertainty only.")
     broad = case.maybe("recording.spectral_broadening")
     if broad is not None:
         key_b = "recording.spectral_broadening"
         givens[key_b] = broad
-        steps.append(lambda c, v, f: c / (1.0 + _column(v[key_b])))
+        steps.append(lambda c, v, f: c / (1.0 + sampled(v[key_b])))
         remarks.append(f"The envelope was lowered for spectral broadening of {case.get(key_b)}.")
     background = case.maybe("recording.background_velocity")
     if background is not None:
@@ -205,9 +132,9 @@ def _doppler(case: Case, quantity: str, steps: list[Step], givens: dict[str, Giv
         givens[key_v] = background
         if quantity == "flow_rate":
             area = np.pi * case.given("tube.radius").value ** 2 if case.get("tube.radius") else np.pi * case.given("tube.diameter").value ** 2 / 4
-            steps.append(lambda c, v, f: _added_to_mean("b", -area)(c, {"b": v[key_v]}, f))
+            steps.append(lambda c, v, f: added_to_mean("b", -area)(c, {"b": v[key_v]}, f))
         else:
-            steps.append(_added_to_mean(key_v, -1.0))
+            steps.append(added_to_mean(key_v, -1.0))
 
 
 def _to_solved(
@@ -232,8 +159,13 @@ def _to_solved(
             )
             quantity = "mean_velocity"
     elif quantity in ("pressure_gradient", "pressure_drop") and (quantity == "pressure_drop" or gathered.needs_distance):
-        givens["recording.distance"] = case.given("recording.distance")
-        steps.append(lambda c, v, f: c / _column(v["recording.distance"]))
+        if gathered.pair is not None and case.get("recording.distance") is None:
+            ends = [f"{section}.position" for section in gathered.sections]
+            givens |= {key: case.given(key) for key in ends}
+            steps.append(lambda c, v, f: c / (sampled(v[ends[1]]) - sampled(v[ends[0]])))
+        else:
+            givens["recording.distance"] = case.given("recording.distance")
+            steps.append(lambda c, v, f: c / sampled(v["recording.distance"]))
         quantity = "pressure_gradient"
     elif quantity == "pressure":
         givens["recording.wave_speed"] = case.given("recording.wave_speed")
@@ -266,10 +198,10 @@ def nominal_radius(case: Case) -> float:
 
 def _wave_step(coefficients: NDArray[np.complex128], values: Values, frequency: float) -> NDArray[np.complex128]:
     """U_n = P_n sqrt(I2/I0)/(rho c): the characteristic impedance of a rigid-walled line per harmonic."""
-    omega = 2 * np.pi * frequency * _orders(coefficients)
-    density, viscosity = _column(values["density"]), _column(values["viscosity"])
-    alpha = _column(values["radius"]) * np.sqrt(omega * density / viscosity)
-    out = coefficients * np.sqrt(flow_factor(alpha)) / (density * _column(values["recording.wave_speed"]))
+    omega = 2 * np.pi * frequency * orders_of(coefficients)
+    density, viscosity = sampled(values["density"]), sampled(values["viscosity"])
+    alpha = sampled(values["radius"]) * np.sqrt(omega * density / viscosity)
+    out = coefficients * np.sqrt(flow_factor(alpha)) / (density * sampled(values["recording.wave_speed"]))
     out[..., 0] = 0.0
     return np.asarray(out)
 

@@ -46,7 +46,7 @@ def provenance(case: Case, recording: Any, extras: Mapping[str, Any]) -> dict[st
         rows |= {"file": name, "sha256": recording.sha256}
         check_hash(case.get("recording.sha256"), recording, "recording")
     rows |= {key: extras[key] for key in ("samples", "seed") if key in extras}
-    rows["date"] = datetime.datetime.now(datetime.timezone.utc).astimezone().isoformat(timespec="seconds")
+    rows["date"] = datetime.datetime.now(datetime.UTC).astimezone().isoformat(timespec="seconds")
     rows["libraries"] = dict(versions())
     return rows
 

@@ -44,6 +44,8 @@ class Gathered:
     givens: Mapping[str, Given] = field(default_factory=dict)
     steps: Sequence[Callable[..., Any]] = ()
     remarks: tuple[str, ...] = ()
+    pair: tuple[Signal, Signal] | None = None
+    sections: tuple[str, str] = ("", "")
 
     def cycles(self, case: Case) -> Cycles:
         """Cut the signal into cycles as the case says."""
@@ -112,10 +114,7 @@ def gather(case: Case, workspace: Workspace, *, progress: Any = None, stop: Any 
     wanted = DIMENSION_OF[quantity]
     if case.get("recording.upstream") or case.get("recording.downstream"):
         return _two_columns(case, recording)
-    if case.get("recording.forward"):
-        signal = _joined(case, recording)
-    else:
-        signal = _chosen(case, recording, wanted)
+    signal = _joined(case, recording) if case.get("recording.forward") else _chosen(case, recording, wanted)
     signal, _ = prepared(case, "recording", signal, workspace)
     signal = _typed(signal, wanted, quantity)
     if case.get("recording.invert"):
@@ -159,18 +158,11 @@ def _example(dimension: str) -> str:
 
 
 def _joined(case: Case, recording: Recording) -> Signal:
-    """Forward minus reverse envelope, both positive in the file; their zeros are data."""
-    forward, reverse = recording[str(case.get("recording.forward"))], case.get("recording.reverse")
+    """Forward minus reverse envelope; their zeros are data."""
+    reverse = case.get("recording.reverse")
     if reverse is None:
         raise case.missing("recording.reverse")
-    backward = recording[str(reverse)]
-    if backward.unit != forward.unit:
-        raise UnitError(f"columns {forward.name!r} ({forward.unit}) and {backward.name!r} ({backward.unit}) differ in unit", name="recording.reverse")
-    remark = f"Columns {forward.name!r} (forward) and {backward.name!r} (reverse) were joined: forward minus reverse."
-    return Signal(
-        forward.clock, forward.values - backward.values, unit=forward.unit, name=f"{forward.name} − {backward.name}", dimension=forward.dimension,
-        remarks=(*recording.remarks, remark),
-    )  # fmt: skip
+    return recording.join(str(case.get("recording.forward")), str(reverse))
 
 
 def prepared(case: Case, section: str, signal: Signal, workspace: Workspace) -> tuple[Signal, bool]:
@@ -195,7 +187,9 @@ def prepared(case: Case, section: str, signal: Signal, workspace: Workspace) -> 
         return signal, False
     done = calibrated(signal, None if calibration is None else str(calibration), zero, name=f"{section}.calibration")
     if between is not None:
-        done = done.kept(signal.time > end)
+        # The stretch at no flow is no cycle: the longer part of the record beside it is what was measured.
+        after = signal.time > end
+        done = done.kept(after if 2 * int(after.sum()) >= len(signal) - int(inside.sum()) else signal.time < begin)
     return done, zero is not None
 
 
@@ -219,20 +213,24 @@ def _deviation_weights(case: Case, recording: Recording, signal: Signal) -> NDAr
     return np.asarray((np.median(deviation) / deviation) ** 2)
 
 
-def _difference(up: Signal, down: Signal, remarks: Sequence[str]) -> Signal:
-    if len(up) == len(down) and np.array_equal(up.time, down.time):
-        values = up.values - down.values
-        weights = None
-        if up.weights is not None or down.weights is not None:
-            ones = np.ones(len(up))
-            weights = (ones if up.weights is None else up.weights) * (ones if down.weights is None else down.weights)
-    else:
+def _difference(up: Signal, down: Signal, remarks: Sequence[str]) -> tuple[Signal, tuple[Signal, Signal]]:
+    """Upstream minus downstream pressure, and both at the same instants."""
+    if not (len(up) == len(down) and np.array_equal(up.time, down.time)):
         inside = (up.time >= down.time[0]) & (up.time <= down.time[-1])
+        if int(inside.sum()) < 4:
+            raise CaseError("the two pressures do not overlap in time; check their files, clocks and delays", key="station")
         up = up.kept(inside)
-        values, weights = up.values - np.interp(up.time, down.time, down.values), up.weights
+        down = Signal(up.clock, np.interp(up.time, down.time, down.values), unit=down.unit, name=down.name, dimension=down.dimension, remarks=down.remarks)
         remarks = (*remarks, f"{down.name!r} was brought to the instants of {up.name!r} by linear interpolation.")
+    weights = None
+    if up.weights is not None or down.weights is not None:
+        ones = np.ones(len(up))
+        weights = (ones if up.weights is None else up.weights) * (ones if down.weights is None else down.weights)
     joined = tuple(dict.fromkeys((*up.remarks, *down.remarks, *remarks)))
-    return Signal(up.clock, values, unit=up.unit, name=f"{up.name} − {down.name}", dimension="pressure", weights=weights, remarks=joined)
+    both = Signal(
+        up.clock, up.values - down.values, unit=up.unit, name=f"{up.name} − {down.name}", dimension="pressure", weights=weights, remarks=joined
+    )  # fmt: skip
+    return both, (up, down)
 
 
 _NO_ZERO = (
@@ -256,7 +254,7 @@ def _two_columns(case: Case, recording: Recording) -> Gathered:
     down, zero_down = prepared(case, "recording", pair[1], workspace)
     up, down = _typed(up, "pressure", "pressure_gradient"), _typed(down, "pressure", "pressure_gradient")
     known = zero_up and zero_down
-    signal = _difference(up, down, () if known else (_NO_ZERO,))
+    signal, _ = _difference(up, down, () if known else (_NO_ZERO,))
     return Gathered(recording=recording, signal=signal, dimension="pressure", mean_known=known, needs_distance=True)
 
 
@@ -292,7 +290,7 @@ def _two_stations(case: Case, workspace: Workspace) -> Gathered:
         delay = case.value(f"station.{index}.delay")
         signals.append(signal if not delay else Signal(signal.time - delay, signal.values, unit=signal.unit, name=signal.name, remarks=signal.remarks))
     known = all(zeroed for _, zeroed, _ in found)
-    signal = _difference(signals[0], signals[1], () if known else (_NO_ZERO,))
+    signal, pair = _difference(signals[0], signals[1], () if known else (_NO_ZERO,))
     rise = (case.value(f"station.{order[0]}.height") or 0.0) - (case.value(f"station.{order[1]}.height") or 0.0)
     steps: tuple[Callable[..., Any], ...] = ()
     if rise:
@@ -304,6 +302,7 @@ def _two_stations(case: Case, workspace: Workspace) -> Gathered:
 
         steps = (step,)
     return Gathered(
-        recording=found[0][2], signal=signal, dimension="pressure", mean_known=known, needs_distance=True, steps=steps,
+        recording=found[0][2], signal=signal, dimension="pressure", mean_known=known, needs_distance=True, steps=steps, pair=pair,
+        sections=(f"station.{order[0]}", f"station.{order[1]}"),
         remarks=(f"The upstream station stands {1e3 * rise:.4g} mm higher than the downstream one; the weight of the liquid was taken out.",) if rise else (),
     )  # fmt: skip
