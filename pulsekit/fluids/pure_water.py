@@ -80,7 +80,8 @@ def water_viscosity_at(temperature: ArrayLike, density: ArrayLike) -> Any:
     t = np.asarray(temperature, float) / 647.096
     d = np.asarray(density, float) / 322.0
     dilute = 100.0 * np.sqrt(t) / sum(h / t**i for i, h in enumerate(_H0))
-    residual = np.polynomial.polynomial.polyval2d(*np.broadcast_arrays(1.0 / t - 1.0, d - 1.0), _H1)
+    x, y = np.broadcast_arrays(1.0 / t - 1.0, d - 1.0)
+    residual = np.polynomial.polynomial.polyval2d(x, y, _H1)
     return plain(1e-6 * dilute * np.exp(d * residual))
 
 
