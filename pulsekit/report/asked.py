@@ -57,6 +57,9 @@ def _radius_scaled(answer: Any, factor: float) -> dict[str, Any]:
     for key in ("radius", "diameter", "outer_diameter", "wall_thickness"):
         if answer.case.get(f"tube.{key}") is not None:
             changes[f"tube.{key}"] = f"{answer.case.given(f'tube.{key}').value * factor!r} m"
+    if answer.case.get("recording.computed_with_radius") == "tube":
+        # The instrument's area stays what it was: only the true radius is thought to differ.
+        changes["recording.computed_with_radius"] = f"{answer.flow.tube.radius!r} m"
     return changes
 
 

@@ -169,7 +169,7 @@ def propagate(
     >>> cloud.findings["time_averaged_wall_shear_stress"].round(4)
     array([1.0471, 1.0471, 1.0471])
     """
-    samples, size = coefficients.shape
+    size = coefficients.shape[1]
     if instants < 4 * (size - 1):
         raise InputError(f"instants = {instants} is too few for {size - 1} harmonics; at least {4 * (size - 1)}", name="instants", value=instants)
     count = size - 1
@@ -232,8 +232,8 @@ def propagate(
         values *= area[:, None]
         spread["flow_rate"] = _band(values)
 
-    forward_s, backward_s = 0.5 * (absolute + mean_s), 0.5 * (absolute - mean_s)
-    forward_u, backward_u = 0.5 * (absolute_u + mean_u), 0.5 * (absolute_u - mean_u)
+    forward_s, backward_s = _two_ways(absolute, mean_s, low_s, high_s)
+    forward_u, backward_u = _two_ways(absolute_u, mean_u, low_u, high_u)
     period = 2 * np.pi / angular_frequency
     biggest_u = np.maximum(-low_u, high_u)
     peak_s = np.maximum(-low_s, high_s)
@@ -279,6 +279,13 @@ def propagate(
     if quantity in ("mean_velocity", "centreline_velocity", "velocity_envelope"):
         found |= _velocity_indices(coefficients, basis)
     return Ensemble(findings=found, bands=spread, instants=instants, mean_velocity=velocity)
+
+
+def _two_ways(
+    absolute: NDArray[np.float64], mean: NDArray[np.float64], low: NDArray[np.float64], high: NDArray[np.float64]
+) -> tuple[NDArray[np.float64], NDArray[np.float64]]:
+    """Means of the forward and of the backward part; exactly 0 where a curve never goes that way."""
+    return np.where(high > 0, 0.5 * (absolute + mean), 0.0), np.where(low < 0, 0.5 * (absolute - mean), 0.0)
 
 
 def _velocity_indices(coefficients: NDArray[np.complex128], basis: NDArray[np.float64]) -> dict[str, NDArray[np.float64]]:
