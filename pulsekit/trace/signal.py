@@ -86,7 +86,8 @@ class Signal:
             raise SignalError(f"signal {self._name!r}: {self._values.shape} values for {n} instants", column=self._name)
         if self._given_weights is not None and self._given_weights.shape != (n,):
             raise SignalError(f"signal {self._name!r}: {self._given_weights.shape} weights for {n} instants", column=self._name)
-        total = float(np.add.reduce(self._values)) if n else 0.0
+        with np.errstate(over="ignore", invalid="ignore"):
+            total = float(np.add.reduce(self._values)) if n else 0.0
         if not np.isfinite(total) and not np.isfinite(self._values).all():
             row = int(np.flatnonzero(~np.isfinite(self._values))[0])
             raise SignalError(

@@ -27,7 +27,7 @@ def settle_marks(source: Source, layout: Layout, rows: list[tuple[int, list[str]
     if told.decimal is not None:
         layout.decimal = told.decimal
         return
-    if layout.delimiter == "," and not layout.quoted:
+    if layout.delimiter == "," and not (layout.quoted and (evidence.comma or evidence.comma_groups or evidence.comma_unclear or evidence.grouped)):
         layout.decimal = "."
         _doubt_commas(layout, rows, notes, told)
         return
@@ -44,6 +44,7 @@ def settle_marks(source: Source, layout: Layout, rows: list[tuple[int, list[str]
     if layout.decimal is None:
         _unclear(layout, evidence, notes)
     other = evidence.comma_unclear or evidence.comma_groups if layout.decimal == "." else evidence.dot_unclear or evidence.dot_groups
+    other = other or evidence.grouped
     if other:
         shown = "comma" if layout.decimal == "." else "dot"
         notes.add(
@@ -80,10 +81,10 @@ def _doubt_commas(layout: Layout, rows: list[tuple[int, list[str]]], notes: Note
         for place in range(1, layout.width):
             text = cells[place].strip()
             if len(text) > 1 and text.startswith("0") and text.isdigit() and cells[place - 1].strip().lstrip("+-").isdigit():
-                layout.preamble["_doubt"] = f"{line}"
+                layout.doubt = line
                 return
     if layout.width == 2 and rows and not any(len(cells[0].strip()) != len(cells[0]) or cells[1].startswith(" ") for _, cells in rows[:50]):
-        layout.preamble["_pair"] = f"{rows[0][0]}"
+        layout.doubt = rows[0][0]
 
 
 def _weigh_samples(source: Source, layout: Layout, useful: list[int], evidence: Evidence) -> None:

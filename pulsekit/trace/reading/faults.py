@@ -79,9 +79,14 @@ def look_for_faults(signal: Signal) -> tuple[NDArray[np.float64] | None, tuple[s
     SignalError
         If more than half of the samples are faulty: too little is left.
     """
-    values = signal.values
-    if len(values) < _FEWEST:
+    if len(signal.values) < _FEWEST:
         return None, ()
+    with np.errstate(all="ignore"):  # absurd numbers overflow; they are no spikes of anything then
+        return _look(signal)
+
+
+def _look(signal: Signal) -> tuple[NDArray[np.float64] | None, tuple[str, ...]]:
+    values = signal.values
     remarks: list[str] = []
     bad = np.zeros(len(values), bool)
     begins, lengths = _runs(values)
@@ -200,7 +205,7 @@ def _spikes(signal: Signal, bad: NDArray[np.bool_], remarks: list[str]) -> None:
     back, ahead = steps[:-1], steps[1:]
     found = (
         np.flatnonzero(
-            (back * ahead < 0)
+            (np.sign(back) == -np.sign(ahead))
             & (np.minimum(np.abs(back), np.abs(ahead)) > least)
             & (np.abs(back + ahead) < 0.5 * np.minimum(np.abs(back), np.abs(ahead)))
         )

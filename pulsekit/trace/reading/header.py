@@ -41,6 +41,8 @@ def _as_header(line: str, layout: Layout) -> list[str] | None:
     least, most = _used_width(layout), layout.width
     # A header may name an empty column at the end, or leave the first (an index) without a name.
     cells = _cells(line, layout.delimiter)
+    if cells and (match := _KEY.match(cells[0])) and ":" in cells[0] and not read_unit(match["value"]).dimension:
+        return None  # 'Note: by hand, run 3' is a line of the preamble
     if least <= len(cells) <= most and _texts(cells):
         return cells
     if layout.delimiter in ("", " "):

@@ -36,6 +36,7 @@ class Layout:
     header_cells: list[str] | None = None  # the header's own line, to find it again after a restart
     preamble: dict[str, str] = field(default_factory=dict)
     quoted: bool = False
+    doubt: int = 0  # line from which the commas may be decimal marks instead of delimiters
     suffixed: dict[int, str] = field(default_factory=dict)  # columns whose cells carry their unit
 
     @property
@@ -130,7 +131,7 @@ def _try(lines: Sequence[str], delimiter: str, decimal: str | None) -> tuple[flo
         return None
     texts = sum(kind == TEXT for kind in kinds)
     layout = Layout(encoding="", delimiter=delimiter, width=width, kinds=kinds, first=first)
-    return sum(fits[first:]) * (0.5 if texts > useful else 1.0), useful, layout
+    return sum(fits[first:]) * (useful / (useful + texts)), useful, layout
 
 
 def _first_row(places: list[int], fits: list[bool]) -> int | None:
@@ -163,7 +164,22 @@ def table_shape(lines: Sequence[str], told: Told, notes: Notes) -> Layout | None
     chosen = max(close, key=lambda found: found[1])[2]
     if chosen.width == 1:
         chosen.delimiter = ""
-    return chosen
+    return _one_column(lines, told) or chosen if (chosen.delimiter, chosen.width) == (",", 2) and not told.delimiter else chosen
+
+
+def _one_column(lines: Sequence[str], told: Told) -> Layout | None:
+    """Whole numbers in pairs under a single name: one column of decimal commas."""
+    if told.decimal == ".":
+        return None
+    found = _try(lines, "\x1f", ",")
+    if found is None or found[2].first == 0:
+        return None
+    layout = found[2]
+    above = next((line for line in reversed(lines[: layout.first]) if line.strip()), "")
+    if "," in above or classify(above) != TEXT or any("." in line for line in lines[layout.first :]):
+        return None
+    layout.delimiter = ""
+    return layout
 
 
 def data_cells(lines: Sequence[str], layout: Layout) -> list[tuple[int, list[str]]]:

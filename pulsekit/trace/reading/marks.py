@@ -28,6 +28,7 @@ class Evidence:
     comma_groups: tuple[int, str] | None = None
     dot_unclear: tuple[int, str] | None = None  # 1.234
     comma_unclear: tuple[int, str] | None = None
+    grouped: tuple[int, str] | None = None  # 1,234.5 or 1.234,5: both marks in one cell
 
     def decimal(self) -> str | None:
         """Return the mark that is settled, or None."""
@@ -61,8 +62,10 @@ class Evidence:
                 self.comma = self.comma or (line, text)
         elif _BOTH_DOT.match(text):
             self.dot = self.dot or (line, text)
+            self.grouped = self.grouped or (line, text)
         elif _BOTH_COMMA.match(text):
             self.comma = self.comma or (line, text)
+            self.grouped = self.grouped or (line, text)
         elif _DOT_GROUPS.match(text):
             self.dot_groups = self.dot_groups or (line, text)
         elif _COMMA_GROUPS.match(text):

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import io
+import warnings
 from collections import Counter
 from collections.abc import Callable
 from dataclasses import dataclass, field
@@ -22,7 +23,7 @@ __all__ = ["Grown", "RowReader", "fixed_decimals"]
 
 _MARKERS = ["", "NaN", "nan", "NAN", "N/A", "n/a", "#N/A", "NA", "na", "null", "NULL", "--", "---", "-"]
 _SPLIT = 200_000  # a piece that is not clean is tried again in parts of this size [bytes]
-_PARSE_TROUBLE = (ValueError, TypeError, OverflowError, pd.errors.ParserError, pd.errors.EmptyDataError, UnicodeError)
+_PARSE_TROUBLE = (ValueError, Warning, TypeError, OverflowError, pd.errors.ParserError, pd.errors.EmptyDataError, UnicodeError)
 
 
 class Grown:
@@ -117,7 +118,9 @@ class RowReader:
         kinds: dict[int, Any] = dict.fromkeys(range(layout.width), str)
         kinds |= dict.fromkeys(self.stored, np.float64)
         try:
-            return pd.read_csv(
+            with warnings.catch_warnings():
+                warnings.simplefilter("error")  # the parser only warns where a first row is too long
+                return pd.read_csv(
                 io.BytesIO(text), header=None, names=range(layout.width), index_col=False, dtype=kinds, engine="c", skip_blank_lines=True,
                 sep=r"\s+" if layout.delimiter == " " else (layout.delimiter or "\x1f"), decimal=layout.decimal or ".",
                 quoting=0 if layout.quoted else 3, low_memory=False, **options,
@@ -294,7 +297,7 @@ class RowReader:
             self.restarts.append((self.rows, line))
             self.tail = [item for item in self.tail if line - item[0] > 60]  # the preamble of the restart
             return
-        if unended and len(cells) <= layout.width and raw.lstrip()[:1] in "0123456789+-.,\"":
+        if unended and len(cells) <= layout.width and raw.lstrip()[:1] in '0123456789+-.,"':
             self.cut = (line, raw)
             return
         if len(self.tail) < 20_000:

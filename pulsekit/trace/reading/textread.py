@@ -79,13 +79,13 @@ class _Reading:
 
     def _check_doubts(self) -> None:
         """Commas that may be decimal marks are settled by the header, or the file is refused."""
-        layout = self.layout
-        doubt, pair = layout.preamble.pop("_doubt", None), layout.preamble.pop("_pair", None)
-        if layout.header_cells is None and (doubt or pair):
+        if self.layout.header_cells is None and self.layout.doubt:
             raise self.notes.refuse(
-                "the commas may be decimal marks or part columns, and there is no header to settle it; pass delimiter=',' or decimal=','",
-                line=int(doubt or pair or 1),
+                "the commas may be decimal marks or part columns, and there is no header to settle it; pass delimiter=',' or decimal=','", line=self.layout.doubt
             )
+        for place, unit in self.layout.suffixed.items():
+            if self.layout.units[place] is None:
+                self.notes.add(f"Column {self.layout.names[place]!r}: the unit {unit} stands in its cells.")
 
     def _check_told(self) -> None:
         layout = self.layout
@@ -147,7 +147,9 @@ class _Reading:
         source, layout, notes = self.source, self.layout, self.notes
         digest = hashlib.sha256()
         fixed = fixed_decimals(self.rows, self.stored, layout.decimal or ".")
-        self.reader = RowReader(layout=layout, notes=notes, stored=self.stored, texts=self.texts, sink=self._sink, fixed=fixed, counted=self.plan.kind == "rate")
+        self.reader = RowReader(
+            layout=layout, notes=notes, stored=self.stored, texts=self.texts, sink=self._sink, fixed=fixed, counted=self.plan.kind == "rate"
+        )
         done = 0
         for piece in pieces(source, layout.encoding, self.told, notes, digest=digest, quoted=layout.quoted):
             text, line = piece.text, piece.first_line

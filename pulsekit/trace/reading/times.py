@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import re
+import warnings
 from dataclasses import dataclass, field
 from typing import Any
 
@@ -78,6 +79,11 @@ class TextClock:
             "year": {"yearfirst": True, "format": "mixed"},
             "month": {"dayfirst": False, "format": "mixed"},
         }.get(self.form, {"dayfirst": True, "format": "mixed"})
+        with warnings.catch_warnings():
+            warnings.simplefilter("ignore")  # on the order of day and month, which is settled here
+            return self._parsed(tidy, options, line, len(texts))
+
+    def _parsed(self, tidy: list[str], options: dict[str, Any], line: int, count: int) -> NDArray[np.float64]:
         try:
             series = pd.to_datetime(pd.Series(tidy, dtype=object).replace("", None), utc=self.kind == "zoned", **options)
             stamps = series.dt.tz_localize(None) if self.kind == "zoned" else series
@@ -92,7 +98,7 @@ class TextClock:
         absent = stamps.isna().to_numpy()
         if self.begin is None:
             if absent.all():
-                return np.full(len(texts), np.nan)
+                return np.full(count, np.nan)
             first = int(np.argmin(absent))
             self.begin = int(whole[first])
             self.origin = str(stamps.iloc[first]) + (" UTC" if self.kind == "zoned" else "")
