@@ -160,22 +160,38 @@ class Fluid:
         >>> round(Fluid(density=1000.0, viscosity="2 cSt").replace(density=1100.0).viscosity, 9)
         0.0022
         """
-        fields: dict[str, Any] = {
-            "density": self.givens.get("density", self.density),
-            "bulk_modulus": self.givens.get("bulk_modulus", self.bulk_modulus),
-            "vapour_pressure": self.givens.get("vapour_pressure", self.vapour_pressure),
-            "temperature": self.givens.get("temperature", self.temperature),
-            "measured_at": self.measured_at, "name": self.name,
-        }  # fmt: skip
+        if unknown := sorted(set(changes) - set(self.__dataclass_fields__)):
+            raise InputError(f"a Fluid has no {unknown[0]!r}; it has {', '.join(self.__dataclass_fields__)}", name=unknown[0])
+        kept: dict[str, Any] = {
+            name: getattr(self, name) for name in ("temperature", "measured_at", "name", "remarks", "sources", "extrapolated")
+        }
+        for name in ("density", "bulk_modulus", "vapour_pressure", "temperature"):
+            # Of a liquid made by a correlation the givens are inputs of that, at other conditions; its values are the attributes.
+            kept[name] = self.givens.get(name, getattr(self, name)) if self.kind == "given" else getattr(self, name)
         if not {"viscosity", "kinematic_viscosity"} & set(changes):
-            key = "kinematic_viscosity" if "kinematic_viscosity" in self.givens else "viscosity"
-            fields[key] = self.givens.get(key, getattr(self, key))
-        if unknown := set(changes) - set(self.__dataclass_fields__):
-            raise InputError(
-                f"a Fluid has no {sorted(unknown)[0]!r}; it has {', '.join(self.__dataclass_fields__)}", name=sorted(unknown)[0]
-            )
-        fields |= {"remarks": self.remarks, "sources": self.sources, "extrapolated": self.extrapolated}
-        return Fluid(**(fields | changes))
+            key = "kinematic_viscosity" if self.kind == "given" and "kinematic_viscosity" in self.givens else "viscosity"
+            kept[key] = self.givens.get(key, getattr(self, key)) if self.kind == "given" else self._with_accuracy()
+        if self.kind != "given":
+            if set(changes) <= {"name", "remarks", "sources", "bulk_modulus", "vapour_pressure"}:
+                kept |= {"kind": self.kind, "givens": self.givens}
+            else:
+                kept["remarks"] = (
+                    *self.remarks,
+                    f"Of this {self.name} {' and '.join(changes)} replaced by hand: the inputs of its correlation are no longer varied.",
+                )
+        return Fluid(**(kept | changes))
+
+    def _with_accuracy(self) -> Given:
+        factor = self.givens.get("correlation")
+        spread = self.viscosity * factor.standard_uncertainty if factor is not None else 0.0
+        return Given(
+            value=self.viscosity,
+            standard_uncertainty=spread,
+            dimension="viscosity",
+            unit="Pa*s",
+            stated=spread > 0,
+            text=f"{self.viscosity * 1e3:.4g} mPa*s",
+        )
 
     def __getstate__(self) -> dict[str, Any]:
         return self.__dict__ | {"givens": dict(self.givens)}

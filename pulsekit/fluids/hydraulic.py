@@ -94,6 +94,8 @@ def hydraulic_oil(
             remarks += (
                 f"The pressure of {values['pressure'] / 1e5:.4g} bar(a) makes the oil about {100 * rise:.0f} % thicker than at atmosphere; this is included.",
             )
+    if vapour_pressure is not None:
+        more["vapour_pressure"] = absolute_pressure(vapour_pressure, "vapour_pressure")
     return Fluid(
         density=dense, viscosity=own, bulk_modulus=stiff, vapour_pressure=vapour_pressure, temperature=warmth, measured_at=measured_at,
         name=f"hydraulic oil ISO VG {givens['grade'].value:g}" if "grade" in givens else "hydraulic oil", kind="hydraulic oil",
