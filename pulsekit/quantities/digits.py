@@ -7,7 +7,8 @@ import math
 __all__ = ["decimals_shown", "format_number", "rounded", "significant"]
 
 _PLAIN_DIGITS = 4  # significant digits of a number without an interval
-_MOST_DIGITS = 8  # an interval narrower than this is a rounding error, not knowledge
+_MOST_DIGITS = 8
+_ROUNDING = 1e-12  # an interval narrower than this, relative to its numbers, is a rounding error
 
 
 def significant(value: float, digits: int) -> float:
@@ -45,7 +46,7 @@ def decimals_shown(value: float | None, low: float | None = None, high: float | 
     else:
         half = 0.0
     largest = max((abs(number) for number in (*bounds, *([value] if known and value is not None else []))), default=0.0)
-    if half == 0.0 or half < largest * 10.0**-_MOST_DIGITS:
+    if half == 0.0 or half < largest * _ROUNDING:
         return _place(value, _PLAIN_DIGITS) if known and value else 0
     return min(_place(half, 2), _place(largest, _MOST_DIGITS))
 

@@ -135,4 +135,4 @@ def write_given(given: Given) -> str:
 
 def _shortest(number: float) -> str:
     short = f"{number:.15g}"
-    return short if abs(float(short) - number) <= 1e-15 * abs(number) else repr(number)
+    return short if abs(float(short) - number) <= 2.3e-16 * abs(number) else repr(number)
