@@ -7,6 +7,7 @@ import os
 import zipfile
 from io import BytesIO
 
+import nbformat
 import pytest
 
 from pulsekit.appraisal import Check, Finding
@@ -118,6 +119,7 @@ def test_ids_of_two_pictures_do_not_meet():
 
 def test_notebook_text_is_only_text():
     book = json.loads(notebook_bytes("<img src=x onerror=alert(1)> **bold**", "wall shear"))
+    nbformat.validate(nbformat.from_dict(book))
     source = "".join(book["cells"][0]["source"])
     assert "<img" not in source
     assert "**bold" not in source

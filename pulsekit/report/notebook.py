@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import hashlib
 import json
+from typing import Any
 
 __all__ = ["notebook_bytes"]
 
@@ -14,26 +15,32 @@ def notebook_bytes(title: str, kind: str) -> bytes:
     >>> b"case.toml" in notebook_bytes("Run 12", "wall shear")
     True
     """
-    import nbformat
-
     heading = title.replace("\n", " ")
     what = "analyse the wall shear of" if kind == "wall shear" else "analyse the pump line of"
-    cells = [
-        nbformat.v4.new_markdown_cell(
-            f"# {_plain_markdown(heading)}\n\nRun the cells to {what} the case in `case.toml`, which lies beside this notebook."
-        ),
-        nbformat.v4.new_code_cell('import pulsekit as pk\n\ncase = pk.load_case("case.toml")\nanswer = pk.analyse(case)'),
-        nbformat.v4.new_code_cell("for finding in answer.findings:\n    print(finding.name, finding.value, finding.low, finding.high)"),
-        nbformat.v4.new_code_cell("answer"),
+    sources = [
+        ("markdown", f"# {_plain_markdown(heading)}\n\nRun the cells to {what} the case in `case.toml`, which lies beside this notebook."),
+        ("code", 'import pulsekit as pk\n\ncase = pk.load_case("case.toml")\nanswer = pk.analyse(case)'),
+        ("code", "for finding in answer.findings:\n    print(finding.name, finding.value, finding.low, finding.high)"),
+        ("code", "answer"),
     ]
-    for number, cell in enumerate(cells):
-        cell["id"] = hashlib.sha256(f"{number}{cell['source']}".encode()).hexdigest()[:8]
-    book = nbformat.v4.new_notebook(
-        cells=cells,
-        metadata={"kernelspec": {"name": "python3", "display_name": "Python 3", "language": "python"}, "language_info": {"name": "python"}},
-    )
-    nbformat.validate(book)
+    book = {
+        "cells": [_cell(number, *source) for number, source in enumerate(sources)],
+        "metadata": {
+            "kernelspec": {"name": "python3", "display_name": "Python 3", "language": "python"}, "language_info": {"name": "python"},
+        },
+        "nbformat": 4,
+        "nbformat_minor": 5,
+    }  # fmt: skip
     return (json.dumps(book, indent=1, ensure_ascii=False, sort_keys=True) + "\n").encode()
+
+
+def _cell(number: int, kind: str, source: str) -> dict[str, Any]:
+    """One cell; its id is made of its text, so that the same answer gives the same bytes."""
+    cell: dict[str, Any] = {"cell_type": kind, "metadata": {}, "source": source}
+    cell["id"] = hashlib.sha256(f"{number}{source}".encode()).hexdigest()[:8]
+    if kind == "code":
+        cell |= {"execution_count": None, "outputs": []}
+    return cell
 
 
 def _plain_markdown(text: str) -> str:

@@ -70,12 +70,15 @@ def _fit(phase: NDArray[np.float64], values: NDArray[np.float64], count: int, we
     design = basis if root is None else basis * root[:, None]
     target = values if root is None else values * root
     normal = design.T @ design
-    condition = np.linalg.cond(normal)
-    if not condition < 1e12:
+    values_of = np.linalg.eigvalsh(normal)
+    if not values_of[0] > 1e-12 * values_of[-1]:
         raise SignalError(f"{count} harmonics cannot be told apart with these samples; keep fewer (harmonics = {max(count // 2, 1)})")
-    vector, *_ = np.linalg.lstsq(design, target, rcond=None)
+    inverse = np.linalg.inv(normal)
+    vector = inverse @ (design.T @ target)
+    # One step of refinement brings the normal equations to the accuracy of an orthogonal solution.
+    vector = vector + inverse @ (design.T @ (target - design @ vector))
     residual = float(np.sum((target - design @ vector) ** 2))
-    return _Fit(vector, np.linalg.inv(normal), residual, values.size - 2 * count - 1, False)
+    return _Fit(vector, inverse, residual, values.size - 2 * count - 1, False)
 
 
 def most_harmonics(cycles: Cycles) -> int:

@@ -127,11 +127,18 @@ def refine_period(signal: Signal, period: float) -> float:
         if per_cycle / thin > 40:
             time, values, weights = time[::thin], values[::thin], weights[::thin]
 
+    root = np.sqrt(weights)
+    target = (values - np.average(values, weights=weights)) * root
+
     def residual(trial: float) -> float:
-        phase = 2 * np.pi * np.outer(time / trial, np.arange(1, count + 1))
-        basis = np.hstack([np.ones((time.size, 1)), np.cos(phase), np.sin(phase)]) * np.sqrt(weights)[:, None]
-        target = values * np.sqrt(weights)
-        fit, *_ = np.linalg.lstsq(basis, target, rcond=None)
+        turn = np.exp(2j * np.pi * time / trial)
+        columns = [root]
+        wave = root.astype(complex)
+        for _ in range(count):
+            wave = wave * turn
+            columns += [wave.real, wave.imag]
+        basis = np.stack(columns, axis=1)
+        fit = np.linalg.solve(basis.T @ basis, basis.T @ target)
         return float(np.sum((target - basis @ fit) ** 2))
 
     reach = 0.35 / (number * count)
