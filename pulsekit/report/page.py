@@ -101,7 +101,8 @@ def shares_table(answer: Any) -> PlainTable | None:
     """Shares of every finding that has any, one column per uncertain input."""
     keys: list[str] = []
     for finding in answer.findings:
-        keys += [key for key in finding.shares if key not in keys]
+        # An input that nowhere owns a hundredth is not worth a column.
+        keys += [key for key, share in finding.shares.items() if key not in keys and share >= 0.01]
     if not keys:
         return None
     rows = []
