@@ -45,6 +45,8 @@ def givens_table(answer: Any) -> PlainTable:
                 unit = DIMENSIONS[given.dimension]
                 si = f"{_number(given.value)} {unit}".strip()
                 spread = f"{_number(given.standard_uncertainty)} {unit}".strip() if given.stated else "none stated: counts as exact"
+                if dotted.rpartition(".")[2] in ("scale_uncertainty", "offset_uncertainty"):
+                    spread = "itself"
         rows.append((dotted, str(value), si, spread, key.help))
     for dotted, given in _derived(answer):
         rows.append((dotted, "from the correlation", _number(given.value), _number(given.standard_uncertainty), "stated accuracy of the correlation"))
