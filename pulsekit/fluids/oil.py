@@ -200,4 +200,4 @@ def oil_properties(values: dict[str, Any]) -> tuple[Any, Any, Any]:
         still * values.get("correlation", 1.0) * np.exp(oil_pressure_viscosity(still, pressure) * values.get("pressure_viscosity", 1.0))
     )
     modulus = oil_bulk_modulus(temperature, pressure, at_20) * values.get("bulk_modulus_correlation", 1.0)
-    return plain(density), plain(values.get("viscosity", viscosity)), plain(values.get("bulk_modulus", modulus))
+    return plain(density), plain(viscosity), plain(values.get("bulk_modulus", modulus))

@@ -19,30 +19,38 @@ __all__ = ["FLUID_KINDS", "sample", "sample_fluid"]
 
 
 def _given(values: Mapping[str, Any]) -> tuple[Any, Any, Any]:
-    density = values["density"]
-    viscosity = values["viscosity"] if "viscosity" in values else values["kinematic_viscosity"] * density
-    return density, viscosity, values.get("bulk_modulus")
+    return values["density"], _viscosity(values, values["density"], lambda: values["viscosity"]), values.get("bulk_modulus")
 
 
 def _blood(values: Mapping[str, Any]) -> tuple[Any, Any, Any]:
     density = blood_density(values["haematocrit"], values["temperature"]) * values.get("density_correlation", 1.0)
-    return density, _viscosity(values, lambda: blood_viscosity(values["haematocrit"], values["temperature"])), None
+    return density, _viscosity(values, density, lambda: blood_viscosity(values["haematocrit"], values["temperature"])), None
 
 
 def _water(values: Mapping[str, Any]) -> tuple[Any, Any, Any]:
     temperature, pressure = values["temperature"], values.get("pressure", ATMOSPHERE)
-    viscosity = _viscosity(values, lambda: water_viscosity(temperature, pressure))
-    return water_density(temperature, pressure), viscosity, water_bulk_modulus(temperature, pressure)
+    density = water_density(temperature, pressure)
+    return density, _viscosity(values, density, lambda: water_viscosity(temperature, pressure)), water_bulk_modulus(temperature, pressure)
 
 
 def _glycerol(values: Mapping[str, Any]) -> tuple[Any, Any, Any]:
     share = glycerol_share(dict(values))
     density = glycerol_density(share, values["temperature"]) * values.get("density_correlation", 1.0)
-    return density, _viscosity(values, lambda: glycerol_viscosity(share, values["temperature"])), None
+    return density, _viscosity(values, density, lambda: glycerol_viscosity(share, values["temperature"])), None
 
 
-def _viscosity(values: Mapping[str, Any], law: Any) -> Any:
-    return values["viscosity"] if "viscosity" in values else law() * values.get("correlation", 1.0)
+def _oil(values: Mapping[str, Any]) -> tuple[Any, Any, Any]:
+    density, viscosity, modulus = oil_properties(dict(values))
+    return density, _viscosity(values, density, lambda: viscosity, factor=False), modulus
+
+
+def _viscosity(values: Mapping[str, Any], density: Any, law: Any, *, factor: bool = True) -> Any:
+    """The measured viscosity of either kind where there is one, else the correlation's times its factor."""
+    if "viscosity" in values:
+        return values["viscosity"]
+    if "kinematic_viscosity" in values:
+        return values["kinematic_viscosity"] * density
+    return law() * values.get("correlation", 1.0) if factor else law()
 
 
 _KINDS = {
@@ -50,7 +58,7 @@ _KINDS = {
     "blood": _blood,
     "water": _water,
     "glycerol solution": _glycerol,
-    "hydraulic oil": lambda values: oil_properties(dict(values)),
+    "hydraulic oil": _oil,
 }
 #: The kinds of fluid that a case may name.
 FLUID_KINDS = tuple(_KINDS)
@@ -102,16 +110,12 @@ def sample_fluid(fluid: Fluid, arrays: Mapping[str, Any]) -> tuple[Any, Any, Any
     >>> sample_fluid(water("20 degC"), {"correlation": [1.0, 1.01]})[1].round(7)
     array([0.0010016, 0.0010116])
     """
-    values: dict[str, Any] = {key: given.value for key, given in fluid.givens.items()}
-    for key in ("density", "viscosity", "bulk_modulus"):
-        if (
-            fluid.kind == "given"
-            and key not in values
-            and getattr(fluid, key) is not None
-            and not (key == "viscosity" and "kinematic_viscosity" in values)
-        ):
-            values[key] = getattr(fluid, key)
-    density, viscosity, modulus = sample(fluid.kind, {**values, **{key: value for key, value in arrays.items() if key in values}})
+    values: dict[str, Any] = {}
+    for key, given in fluid.givens.items():
+        # The name of a viscosity is the one under which it was given; what it is, its dimension tells.
+        own = given.dimension if key in ("viscosity", "kinematic_viscosity") else key
+        values[own] = arrays.get(key, given.value)
+    density, viscosity, modulus = sample(fluid.kind, values)
     if modulus is None and fluid.bulk_modulus is not None:
         modulus = fluid.bulk_modulus
     return density, viscosity, modulus
