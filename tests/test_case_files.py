@@ -161,7 +161,7 @@ def test_a_pressure_that_must_say_its_reference(tmp_path):
 
 
 def test_missing_files(tmp_path):
-    with pytest.raises(MissingFileError, match="nowhere.toml"):
+    with pytest.raises(MissingFileError, match=r"nowhere\.toml"):
         load_case(tmp_path / "nowhere.toml")
     with pytest.raises(MissingFileError, match="folder"):
         load_case(tmp_path)

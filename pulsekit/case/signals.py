@@ -13,7 +13,9 @@ from ..errors import CaseError, InputError, UnitError
 from ..quantities import Given, parse_given
 from ..trace import Cycles, Recording, Signal, find_cycles
 from ..trace.channel import calibrated
+from ..trace.trigger import trigger_onsets
 from .case import Case
+from .caveats import refuse_wrapped
 from .workspace import Workspace
 
 __all__ = ["DIMENSION_OF", "Gathered", "gather", "station_signal"]
@@ -54,13 +56,24 @@ class Gathered:
         if onsets is not None:
             onsets = [parse_given(entry, "time", "cycles.onsets").value for entry in onsets]
         remarks: tuple[str, ...] = ()
-        if period is None and onsets is None:
+        if case.get("recording.trigger") is not None and onsets is None and period is None:
+            onsets, remarks = self._triggered(case)
+        elif period is None and onsets is None:
             period, remarks = period_of_preamble(self.recording, self.signal)
         found = find_cycles(
             self.signal, period=period, onsets=onsets, leave_out=case.get("cycles.leave_out") or (), align=case.get("cycles.align"),
             keep_odd=bool(case.get("cycles.keep_odd")), remove_drift=bool(case.get("cycles.remove_drift")),
         )  # fmt: skip
         return found if not remarks else _remarked(found, remarks)
+
+    def _triggered(self, case: Case) -> tuple[NDArray[np.float64], tuple[str, ...]]:
+        """Onsets within the signal from the trigger column."""
+        column = str(case.get("recording.trigger"))
+        pulses = int(case.get("recording.pulses_per_revolution") or 1)
+        onsets = trigger_onsets(self.recording[column], pulses_per_cycle=pulses)
+        time = self.signal.time
+        inside = onsets[(onsets >= time[0]) & (onsets <= time[-1] + float(np.median(np.diff(time))))]
+        return inside, (f"Cycles begin where the trigger {column!r} rises.",)
 
 
 def _remarked(cycles: Cycles, remarks: tuple[str, ...]) -> Cycles:
@@ -119,6 +132,9 @@ def gather(case: Case, workspace: Workspace, *, progress: Any = None, stop: Any 
     signal = _typed(signal, wanted, quantity)
     if case.get("recording.invert"):
         signal = signal.replace(values=-signal.values, remarks=(*signal.remarks, f"Column {signal.name!r} was inverted, as asked."))
+    limit = case.value("recording.velocity_encoding")
+    if limit is not None and wanted == "velocity":
+        refuse_wrapped(signal, limit)
     mean_known = case.get("recording.coupling") != "ac"
     return Gathered(
         recording=recording, signal=signal, dimension=wanted, mean_known=mean_known, weights=_deviation_weights(case, recording, signal),
