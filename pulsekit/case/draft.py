@@ -12,7 +12,7 @@ from ..errors import PulsekitError, SignalError
 from ..trace import Recording, find_cycles, read_recording
 from .schema import KEYS
 
-__all__ = ["YOURS", "Draft", "draft_case"]
+__all__ = ["YOURS", "Draft", "draft_case", "signal_lines"]
 
 #: Mark of a line that only the user can fill.
 YOURS = "YOURS TO FILL"
@@ -62,7 +62,7 @@ def _kind_of(recording: Recording) -> str:
     return "pump line" if pressures and units <= _LINE_UNITS else "wall shear"
 
 
-def _signal_lines(recording: Recording) -> list[str]:
+def signal_lines(recording: Recording) -> list[str]:
     """The [recording] lines of a tube: column and quantity, as far as units and names tell."""
     listed = ", ".join(f"{name} ({unit})" if unit else name for name, unit in recording.units.items())
     lines = [_comment(f"Columns found: {listed}")]
@@ -216,7 +216,7 @@ def draft_case(recording: str | Path, *, kind: str | None = None) -> Draft:
         f"title = {_quoted(place.stem)}",
     ]
     if kind == "wall shear":
-        lines += ["", "[recording]", f"file = {_quoted(place.name)}", *_signal_lines(read)]
+        lines += ["", "[recording]", f"file = {_quoted(place.name)}", *signal_lines(read)]
         lines += _said("In reading the file:", read.remarks)
         lines += ["", "[cycles]", *_cycle_lines(read), *_TUBE_LINES]
     else:

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import json
+import threading
 from collections import OrderedDict
 from collections.abc import Callable, Hashable
 from pathlib import Path
@@ -23,16 +24,20 @@ class Workspace:
 
     def __init__(self) -> None:
         self._kept: OrderedDict[Hashable, Any] = OrderedDict()
+        self._lock = threading.Lock()
 
     def remember(self, key: Hashable, make: Callable[[], Any]) -> Any:
         """Return what was made for this key, or make it."""
-        if key in self._kept:
-            self._kept.move_to_end(key)
-            return self._kept[key]
+        with self._lock:
+            if key in self._kept:
+                self._kept.move_to_end(key)
+                return self._kept[key]
+        # Two threads may make the same value; that costs time, never a wrong answer.
         value = make()
-        self._kept[key] = value
-        while len(self._kept) > _MOST:
-            self._kept.popitem(last=False)
+        with self._lock:
+            value = self._kept.setdefault(key, value)
+            while len(self._kept) > _MOST:
+                self._kept.popitem(last=False)
         return value
 
     def recording(self, case: Case, section: str = "recording", *, progress: Any = None, stop: Any = None) -> Any:
