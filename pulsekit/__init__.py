@@ -7,13 +7,14 @@
 
 from . import errors, fluids, report
 from .appraisal import Check, Checks, Finding, Findings
-from .case import Case, PumpLineCase, WallShearCase, load_case
+from .case import Answer, Case, PumpLineCase, WallShearCase, Workspace, analyse, load_case
 from .errors import PulsekitError
 from .fluids import Fluid
 from .trace import Cycles, Harmonics, Recording, Signal, decompose, find_cycles, read_recording
 from .tube import CircularTube, TubeFlow, solve
 
 __all__ = [
+    "Answer",
     "Case",
     "Check",
     "Checks",
@@ -29,6 +30,8 @@ __all__ = [
     "Signal",
     "TubeFlow",
     "WallShearCase",
+    "Workspace",
+    "analyse",
     "decompose",
     "errors",
     "find_cycles",
