@@ -213,7 +213,7 @@ def _mean_of_file(case: Case, section: str, signal: Signal, workspace: Workspace
     from ..trace import read_recording
 
     place = case.file_path(f"{section}.zero_file")
-    recording = workspace.remember(("zero", str(place)), lambda: read_recording(place))
+    recording = workspace.remember(("zero", str(place), place.stat().st_mtime_ns if place.exists() else 0), lambda: read_recording(place))
     if signal.name not in recording.columns:
         raise CaseError(f"{section}.zero_file has no column {signal.name!r}; it has: {', '.join(recording.columns)}", key=f"{section}.zero_file")
     return float(np.mean(recording[signal.name].values))

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import contextlib
 import json
 import threading
 from collections import OrderedDict
@@ -61,5 +62,21 @@ class Workspace:
 
 
 def part_key(name: str, case: Case, *sections: str) -> tuple[str, str]:
-    """Key of a result that depends on some sections of the case."""
-    return name, json.dumps([case.get(section) for section in sections] + [str(case.folder)], sort_keys=True, default=str)
+    """Key of a result that depends on some sections of the case, and on the files that they name as these are now."""
+    parts = [case.get(section) for section in sections]
+    return name, json.dumps([*parts, str(case.folder), _stamps(parts, case.folder)], sort_keys=True, default=str)
+
+
+def _stamps(part: Any, folder: Path) -> list[tuple[str, int, int]]:
+    """Name, size and time of change of every file named in a part of a case."""
+    if isinstance(part, dict):
+        found = [stamp for value in part.values() for stamp in _stamps(value, folder)]
+        for name in ("file", "zero_file"):
+            if isinstance(part.get(name), str):
+                with contextlib.suppress(OSError):
+                    stat = (folder / part[name]).expanduser().stat()
+                    found.append((part[name], stat.st_size, stat.st_mtime_ns))
+        return found
+    if isinstance(part, list):
+        return [stamp for value in part for stamp in _stamps(value, folder)]
+    return []

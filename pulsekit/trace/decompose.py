@@ -81,6 +81,20 @@ def _fit(phase: NDArray[np.float64], values: NDArray[np.float64], count: int, we
     return _Fit(vector, inverse, residual, values.size - 2 * count - 1, False)
 
 
+def _fit_below(
+    phase: NDArray[np.float64], values: NDArray[np.float64], looked: int, least: int, weights: NDArray[np.float64] | None
+) -> tuple[_Fit, int]:
+    """Fit ``looked`` harmonics, or as many fewer (not below ``least``) as the phases of the samples tell apart."""
+    while True:
+        try:
+            return _fit(phase, values, looked, weights), looked
+        except SignalError:
+            if looked <= least:
+                raise
+            # Samples that fall on nearly the same phases in every cycle lose the harmonics next to the Nyquist limit.
+            looked = max(least, int(0.85 * looked))
+
+
 def most_harmonics(cycles: Cycles) -> int:
     """Highest harmonic below the Nyquist limit of the samples used (and, in a gated cycle, that the gap leaves apart)."""
     rows, _, _ = cycles.samples
@@ -186,7 +200,10 @@ def decompose(cycles: Cycles, count: int | None = None, *, weights: NDArray[np.f
         looked = max(looked, int(count))
     sample_weights = None if weights is None else np.asarray(weights, dtype=float)[rows]
     each = _regular(cycles, rows, owners) if sample_weights is None else 0
-    fit = _by_fft(values, each, cycles.count, looked) if each else _fit(phase, values, looked, sample_weights)
+    if each:
+        fit = _by_fft(values, each, cycles.count, looked)
+    else:
+        fit, looked = _fit_below(phase, values, looked, 1 if count is None else int(count), sample_weights)
     own = cycle_coefficients(cycles, looked, _complex(fit.vector)) if cycles.count > 1 else np.empty((0, looked + 1), dtype=complex)
     noise, freedom = _noise(fit, own, looked)
     kept = int(count) if count is not None else _significant(fit, noise, freedom, looked)
