@@ -89,8 +89,8 @@ def bramwell_hill_speed(*, pressure_change: ArrayLike, relative_area_change: Arr
 
     Examples
     --------
-    >>> round(float(bramwell_hill_speed(pressure_change=40 * 133.322368, relative_area_change=0.1, density=1060.0)), 5)
-    7.09297
+    >>> round(float(bramwell_hill_speed(pressure_change=40 * 133.322368, relative_area_change=0.1, density=1060.0)), 4)
+    7.093
     """
     return np.sqrt(np.asarray(pressure_change, float) / (np.asarray(density, float) * np.asarray(relative_area_change, float)))[()]
 
@@ -132,7 +132,7 @@ def friction_factor(reynolds: ArrayLike, *, relative_roughness: ArrayLike = 0.0)
     Examples
     --------
     >>> round(float(friction_factor(1000.0)), 3), round(float(friction_factor(1e5)), 4)
-    (0.064, 0.0179)
+    (0.064, 0.0178)
     """
     re = np.asarray(reynolds, float)
     with np.errstate(divide="ignore"):
