@@ -118,6 +118,7 @@ def _print_answer(answer: Any) -> None:
     from rich.markup import escape
     from rich.table import Table
 
+    from .report.page import interval_notes
     from .report.rows import check_rows, finding_rows, interval_head
 
     # Nobody looks at the width of a pipe: tables keep their columns there.
@@ -132,12 +133,15 @@ def _print_answer(answer: Any) -> None:
     for row in finding_rows(answer.findings):
         table.add_row(*map(escape, (row.label, row.value, row.interval, row.unit, row.reliance, row.biggest_share)))
     console.print(table)
+    for note in interval_notes(answer):
+        console.print(escape(note))
     checks = Table(box=box.SIMPLE_HEAD, pad_edge=False)
     for head in ("Check", "Verdict", "Because"):
         checks.add_column(head, overflow="fold")
     for entry in check_rows(answer.checks):
         checks.add_row(escape(entry.label), f"[{_VERDICT_STYLE[entry.verdict]}]{entry.shape} {entry.verdict}[/]", escape(entry.because))
     console.print(checks)
+    console.print("Remarks (what was guessed, repaired, dropped or assumed):")
     for remark in answer.remarks:
         console.print(f"- {escape(str(remark))}")
 

@@ -34,7 +34,7 @@ def tube_context(case: Case, measurement: Measurement, flow: Any, samples: Mappi
         "newtonian_by_kind": kind in _NEWTONIAN, "cycles": measurement.cycles, "harmonics": measurement.raw,
         "signal": measurement.gathered.signal, "quantity": str(case.get("recording.quantity")), "sample_volume": case.get("recording.sample_volume"),
         "antialias_filter": case.value("recording.antialias_filter"),
-        "instrument_known": any(case.get(f"recording.{name}") is not None for name in _INSTRUMENT),
+        "instrument_known": any(case.get(f"{section}.{name}") is not None for name in _INSTRUMENT for section in ("recording", *measurement.gathered.sections)),
         "wave_alone": case.get("recording.quantity") == "pressure", "samples": samples,
     }  # fmt: skip
 

@@ -7,12 +7,14 @@ from typing import Any
 import numpy as np
 import pandas as pd
 
+from ..errors import PulsekitError
 from ..quantities import from_si
 from ..trace import cycle_coefficients
 from ..tube import CircularTube, TubeFlow, solve
 from ..tube.findings import tube_values
 from .answer import Answer, shown_findings, unit_for
 from .case import Case
+from .caveats import rectified_words, with_radius_of_area
 from .liquids import fluid_of
 from .measurement import Measurement, measure
 from .provenance import provenance
@@ -59,22 +61,24 @@ def analyse_wall_shear(
     from .tube_verdicts import overall_words, reliant, tube_context
 
     workspace = workspace or Workspace()
+    case, area_remarks = with_radius_of_area(case, workspace)
     measurement = measure(case, workspace, progress=progress, stop=stop)
     tube, fluid = tube_of(case), fluid_of(case)
     flow = solve_measurement(measurement, tube, fluid)
     units = reader_units(case, measurement.gathered.signal)
     findings, checks = flow.findings(), flow.checks(**tube_context(case, measurement, flow))
-    remarks = _remarks(measurement, flow, fluid)
+    remarks = [*_remarks(measurement, flow, fluid), *area_remarks, *_signal_remarks(case, measurement)]
     more: dict[str, Any] = {}
     if not nominal_only:
+        remarks += other_alignment(case, measurement, findings, workspace, tube, fluid)
         spread = propagate_tube(case, measurement, flow, findings, checks, samples=samples, progress=progress, stop=stop)
-        findings, checks = spread.findings, spread.checks
+        findings, checks = spread.findings, flow.checks(**tube_context(case, measurement, flow, spread.samples))
         remarks += [sentence for sentence in spread.remarks if sentence not in remarks]
         more = {
             "bands": spread.bands, "shares_definition": spread.shares_definition, "left_out_inputs": spread.left_out, "improve": spread.improve,
             "samples": spread.samples, "extras": spread.extras,
         }  # fmt: skip
-    findings = reliant(findings, checks)
+    findings = reliant(findings, checks, str(case.get("recording.quantity")))
     shown = shown_findings(findings, units)
     per_cycle = (
         pd.DataFrame() if nominal_only
@@ -95,6 +99,34 @@ def _remarks(measurement: Measurement, flow: TubeFlow, fluid: Any) -> list[str]:
         *(getattr(fluid, "sources", ()) or ()),
     ]  # fmt: skip
     return list(dict.fromkeys(rows))
+
+
+def _signal_remarks(case: Case, measurement: Measurement) -> list[str]:
+    """What the course of the signal itself warns of."""
+    if measurement.gathered.dimension != "velocity" or case.get("recording.forward"):
+        return []
+    words = rectified_words(measurement.gathered.signal, measurement.cycles)
+    return [words] if words else []
+
+
+def other_alignment(case: Case, measurement: Measurement, findings: Any, workspace: Workspace, tube: CircularTube, fluid: Any) -> list[str]:
+    """What the other way to average cycles of unequal length would give; nothing where they are all alike."""
+    if measurement.cycles.count < 2 or measurement.cycles.period_scatter < 0.005:
+        return []
+    other = "stretch" if measurement.cycles.align == "onset" else "onset"
+    try:
+        changed = measure(case.with_value("cycles.align", other), workspace)
+        found = solve_measurement(changed, tube, fluid).findings()
+    except PulsekitError as problem:
+        return [f'Averaging the cycles by align = "{other}" is not possible here: {problem}']
+    parts = []
+    for name in ("time_averaged_wall_shear_stress", "peak_wall_shear_stress", "oscillatory_shear_index"):
+        value, mine = found[name].value, findings[name].value
+        if value is not None and mine is not None:
+            parts.append(f"{name.replace('_', ' ')} {value:.4g} in place of {mine:.4g}" + (f" {found[name].unit}" if found[name].unit else ""))
+    if not parts:
+        return []
+    return [f'Cycles were averaged by align = "{measurement.cycles.align}"; "{other}" would give {", ".join(parts)}.']
 
 
 def per_cycle_table(measurement: Measurement, flow: TubeFlow, units: Any) -> pd.DataFrame:
