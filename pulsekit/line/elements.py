@@ -125,7 +125,7 @@ class _Conduit(Element):
         turbulent = np.asarray(reynolds) > _TURBULENT
         if not np.any(turbulent):
             return laminar
-        velocity = np.abs(medium.mean_flow) / (np.pi * radius**2)
+        velocity = np.abs(medium.flow_or_none) / (np.pi * radius**2)
         ratio = turbulent_friction_ratio(
             alpha=alpha, reynolds=np.maximum(reynolds, _TURBULENT), velocity=velocity, radius=radius, angular_frequency=omega
         )
@@ -134,7 +134,7 @@ class _Conduit(Element):
     def reynolds(self, medium: Medium, values: Values) -> Any:
         """Reynolds number of the mean flow. [-]"""
         radius = bore_radius(values)
-        return 2 * np.abs(medium.mean_flow) * medium.density / (np.pi * radius * medium.viscosity)
+        return 2 * np.abs(medium.flow_or_none) * medium.density / (np.pi * radius * medium.viscosity)
 
     def line_constants(self, omega: Any, medium: Medium, values: Values) -> tuple[Any, Any]:
         """Propagation constant [1/m] and characteristic impedance [Pa s/m^3]."""

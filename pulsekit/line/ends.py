@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 from types import MappingProxyType
 from typing import Any
 
@@ -24,7 +24,7 @@ _NONE: Mapping[str, Given] = MappingProxyType({})
 class End:
     """What all ends share."""
 
-    givens: Mapping[str, Given] = _NONE
+    givens: Mapping[str, Given] = field(default_factory=lambda: _NONE)
 
     kind = "end"
 
@@ -101,7 +101,7 @@ class ImpedanceEnd(End):
 
     def __init__(self, impedance: Any) -> None:
         function = impedance if callable(impedance) else None
-        givens: Mapping[str, Given] = _NONE
+        givens: Mapping[str, Given] = field(default_factory=lambda: _NONE)
         constant: complex = 0j
         if function is None:
             if isinstance(impedance, complex):

@@ -140,7 +140,7 @@ class Line:
         found = [load]
         for place in range(len(self.elements) - 1, -1, -1):
             element = self.elements[place]
-            load = element.upstream(load, omega, _for(element, medium), part(values, f"element.{place}"))
+            load = element.upstream(load, omega, medium, part(values, f"element.{place}"))
             found.append(load)
         return found[::-1]
 
@@ -194,15 +194,6 @@ class Line:
 
     def __repr__(self) -> str:
         return f"<Line of {len(self.elements)} elements, {self.length:.4g} m, {self.end.kind} end>"
-
-
-def _for(element: Element, medium: Medium) -> Medium:
-    """Conduits and the rest need a number for the mean flow; a restrictor knows what None means."""
-    if medium.mean_flow is None and isinstance(element, (_Conduit, SideBranch)):
-        from dataclasses import replace
-
-        return replace(medium, mean_flow=0.0)
-    return medium
 
 
 def _remarks(elements: Sequence[Element]) -> tuple[str, ...]:

@@ -31,6 +31,11 @@ class Medium:
     gas_at_line_pressure: Any = 0.0
 
     @property
+    def flow_or_none(self) -> Any:
+        """Mean flow, or 0 where none is known (friction in pipes is laminar then)."""
+        return 0.0 if self.mean_flow is None else self.mean_flow
+
+    @property
     def has_gas(self) -> bool:
         """Tell whether there is free gas."""
         return bool(np.any(np.asarray(self.gas_at_atmosphere) > 0) or np.any(np.asarray(self.gas_at_line_pressure) > 0))

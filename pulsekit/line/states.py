@@ -10,7 +10,7 @@ from numpy.typing import NDArray
 
 from ..errors import InputError
 from .elements import Restrictor, SideBranch, _Conduit, _Shunt, part
-from .line import Line, _for
+from .line import Line
 from .load import Load
 from .medium import Medium
 
@@ -32,7 +32,7 @@ def march(line: Line, omega: Any, medium: Medium, values: Mapping[str, Any], loa
     """Pressure and flow at the upstream side of each element, and at the end."""
     states = [start]
     for place, element in enumerate(line.elements):
-        states.append(element.onward(states[-1], loads[place + 1], omega, _for(element, medium), part(values, f"element.{place}")))
+        states.append(element.onward(states[-1], loads[place + 1], omega, medium, part(values, f"element.{place}")))
     return states
 
 
@@ -71,7 +71,7 @@ def along(
             # A sampled length moves the stations in proportion.
             inner = part(values, f"element.{place}")
             stretched = distance / element.length * np.asarray(inner["length"])
-            pressure, flow = element.inside(states[place], loads[place + 1], omega, _for(element, medium), inner, stretched)  # type: ignore[attr-defined]
+            pressure, flow = element.inside(states[place], loads[place + 1], omega, medium, inner, stretched)  # type: ignore[attr-defined]
         pressures.append(pressure)
         flows.append(flow)
     return np.stack(np.broadcast_arrays(*pressures)), np.stack(np.broadcast_arrays(*flows))
