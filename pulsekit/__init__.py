@@ -7,7 +7,7 @@
 
 from . import errors, fluids, report
 from .appraisal import Check, Checks, Finding, Findings
-from .case import Answer, Case, PumpLineCase, WallShearCase, Workspace, analyse, load_case
+from .case import Answer, Case, Comparison, PumpLineCase, WallShearCase, Workspace, analyse, compare, load_case
 from .errors import PulsekitError
 from .fluids import Fluid
 from .trace import Cycles, Harmonics, Recording, Signal, decompose, find_cycles, read_recording
@@ -19,6 +19,7 @@ __all__ = [
     "Check",
     "Checks",
     "CircularTube",
+    "Comparison",
     "Cycles",
     "Finding",
     "Findings",
@@ -32,6 +33,7 @@ __all__ = [
     "WallShearCase",
     "Workspace",
     "analyse",
+    "compare",
     "decompose",
     "errors",
     "find_cycles",

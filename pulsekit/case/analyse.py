@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable
+from collections.abc import Callable, Mapping
 from typing import Any
 
 from ..errors import InputError
@@ -21,6 +21,7 @@ def analyse(
     stop: Callable[[], bool] | None = None,
     nominal_only: bool = False,
     workspace: Workspace | None = None,
+    identities: Mapping[str, str] | None = None,
 ) -> Answer:
     """Answer a case.
 
@@ -37,6 +38,9 @@ def analyse(
         Leave out intervals, bands and shares (for a hand on a slider).
     workspace : Workspace, optional
         Keeps what was read and decomposed between two calls; it never changes the answer.
+    identities : mapping of str to str, optional
+        Dotted key of a given (or ``recording``) to the name of its stream of random numbers, in place of the usual one:
+        how `compare` lets two cases share some unknowns and not others.
 
     Returns
     -------
@@ -66,4 +70,5 @@ def analyse(
         from .pump_line import analyse_pump_line as work
     else:
         raise InputError(f"a case of kind {case.kind!r} cannot be analysed", name="kind", value=case.kind)
-    return work(case, samples=samples, progress=progress, stop=stop, nominal_only=nominal_only, workspace=workspace)
+    more = {"identities": identities} if identities else {}
+    return work(case, samples=samples, progress=progress, stop=stop, nominal_only=nominal_only, workspace=workspace, **more)

@@ -132,17 +132,20 @@ def _run(
 
 def propagate_tube(
     case: Case, measurement: Measurement, flow: Any, findings: Findings, checks: Checks, *, samples: int | None = None, progress: Any = None,
-    stop: Any = None,
+    stop: Any = None, identities: Mapping[str, str] | None = None,
 ) -> PropagatedTube:  # fmt: skip
     """Return the findings of a case with intervals, shares and bands."""
     stated = samples if samples is not None else case.get("uncertainty.samples")
     count = int(stated or SAMPLES)
     seed = int(case.get("uncertainty.seed", SEED))
     inputs = uncertain_inputs(case, measurement, flow)
+    if identities:
+        inputs = {key: entry._replace(identity=identities.get(key, entry.identity)) for key, entry in inputs.items()}
     uncertain = {key: entry for key, entry in inputs.items() if entry.given.standard_uncertainty > 0}
     nominal = {key: entry.given.value for key, entry in inputs.items()}
     values = {key: np.full(count, value) for key, value in nominal.items()} | draw_inputs(uncertain, count, seed)
     identity = str(case.get("recording.id") or measurement.gathered.recording.sha256 or "recording")
+    identity = (identities or {}).get("recording", identity)
     raw = draw_harmonics(measurement.raw, count, stream(seed, identity))
     instants = max(256, 8 * measurement.raw.count)
     place = peak_velocity(flow)[1]
@@ -161,7 +164,7 @@ def propagate_tube(
     return PropagatedTube(
         findings=out, checks=checks, bands={name: Band(time, *ends) for name, ends in bands.items()} if known and table else {},
         remarks=tuple(remarks), shares_definition=SHARES_DEFINITION, left_out=_left_out(model, inputs, nominal, nominal_run, measurement, instants),
-        improve=_improve(out), samples=cloud, extras={"samples": count, "seed": seed},
+        improve=_improve(out), samples=cloud, extras={"samples": count, "seed": seed, "inputs": uncertain, "columns": table, "identity": identity},
     )  # fmt: skip
 
 

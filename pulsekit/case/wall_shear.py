@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Mapping
 from typing import Any
 
 import numpy as np
@@ -54,8 +55,9 @@ def solve_measurement(measurement: Measurement, tube: CircularTube, fluid: Any) 
 
 
 def analyse_wall_shear(
-    case: Case, *, samples: int | None = None, progress: Any = None, stop: Any = None, nominal_only: bool = False, workspace: Workspace | None = None
-) -> Answer:
+    case: Case, *, samples: int | None = None, progress: Any = None, stop: Any = None, nominal_only: bool = False, workspace: Workspace | None = None,
+    identities: Mapping[str, str] | None = None,
+) -> Answer:  # fmt: skip
     """Answer a wall-shear case (see `analyse`)."""
     from .propagate_tube import propagate_tube
     from .tube_verdicts import overall_words, reliant, tube_context
@@ -71,7 +73,7 @@ def analyse_wall_shear(
     more: dict[str, Any] = {}
     if not nominal_only:
         remarks += other_alignment(case, measurement, findings, workspace, tube, fluid)
-        spread = propagate_tube(case, measurement, flow, findings, checks, samples=samples, progress=progress, stop=stop)
+        spread = propagate_tube(case, measurement, flow, findings, checks, samples=samples, progress=progress, stop=stop, identities=identities)
         findings, checks = spread.findings, flow.checks(**tube_context(case, measurement, flow, spread.samples))
         remarks += [sentence for sentence in spread.remarks if sentence not in remarks]
         more = {
