@@ -29,7 +29,7 @@ REFERENCES = (
     "F. Durst et al., The development lengths of laminar pipe and channel flows, J. Fluids Eng. 127 (2005) 1154–1160.",
 )
 
-_QUANTITY_WORDS = {
+QUANTITY_WORDS = {
     "flow_rate": "volume flow rate",
     "mean_velocity": "mean velocity over the section",
     "centreline_velocity": "velocity on the axis",
@@ -44,7 +44,7 @@ _QUANTITY_WORDS = {
 def quantity_words(answer: Any) -> str:
     """The measured quantity in words."""
     name = str(answer.case.get("recording.quantity"))
-    return _QUANTITY_WORDS.get(name, name.replace("_", " "))
+    return QUANTITY_WORDS.get(name, name.replace("_", " "))
 
 
 def _sizes(answer: Any) -> str:

@@ -13,7 +13,9 @@ from ..report.rows import check_rows, decimals_of, finding_rows, interval_head, 
 __all__ = ["answer_rows", "change_words"]
 
 
-def answer_rows(answer: Answer | None, reference: Answer | None, *, full: bool, lead: Sequence[str], cautions: Sequence[str]) -> dict[str, Any]:
+def answer_rows(
+    answer: Answer | None, reference: Answer | None, *, full: bool, lead: Sequence[str], cautions: Sequence[str]
+) -> dict[str, Any]:
     """Return findings, checks, remarks and cautions of an answer as JSON.
 
     ``full`` tells whether intervals and shares belong to it; where they do not (yet), none is shown. Findings

@@ -13,7 +13,7 @@ from typing import Any
 from ..case import Answer, Case, Workspace, analyse, load_case
 from ..case.case import make_case
 from ..case.schema import key_of, sections_of
-from ..errors import CaseError, InputError, MissingColumnError, MissingFileError, PulsekitError, RecordingError, SignalError, StoppedError
+from ..errors import CaseError, MissingColumnError, MissingFileError, PulsekitError, RecordingError, SignalError, StoppedError
 from .fields import value_of
 
 __all__ = ["DeskState"]
@@ -141,7 +141,8 @@ class DeskState:
         try:
             case = self.changed(key, value_of(key, text))
         except PulsekitError as problem:
-            self.refused[key] = (str(text), str(problem))
+            # The value was typed here: the case file's name in front of the sentence would mislead.
+            self.refused[key] = (str(text), str(problem).replace(f"{self.case.path}: ", ""))
             return False
         self.refused.pop(key, None)
         self.take(case, gesture=gesture)

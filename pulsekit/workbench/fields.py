@@ -113,10 +113,16 @@ def flag_field(state: DeskState, key: str, label: str = "", *, unset: str = "not
     return _common(state, key, "choice", label, "") | {"value": state.text_of(key), "options": options}
 
 
-def choice_field(state: DeskState, key: str, label: str = "", *, options: Sequence[Sequence[str]] | None = None, unset: str = "choose") -> dict[str, Any]:
+def choice_field(
+    state: DeskState, key: str, label: str = "", *, options: Sequence[Sequence[str]] | None = None, unset: str = "choose"
+) -> dict[str, Any]:
     """One of several; the choices of the key if none are given. What stands in the case is always among them."""
     taken = key_of(key)
-    rows = [list(row) for row in options] if options is not None else [[word, word.replace("_", " ")] for word in (taken.choices if taken else ())]
+    rows = (
+        [list(row) for row in options]
+        if options is not None
+        else [[word, word.replace("_", " ")] for word in (taken.choices if taken else ())]
+    )
     present = state.text_of(key)
     if present and present not in [row[0] for row in rows]:
         rows.append([present, f"{present} (not found)"])
@@ -124,7 +130,15 @@ def choice_field(state: DeskState, key: str, label: str = "", *, options: Sequen
 
 
 def quantity_field(
-    state: DeskState, key: str, label: str = "", *, hint: str = "", spread: bool = True, slider: bool = False, factor: float = 1.0, derived: str = ""
+    state: DeskState,
+    key: str,
+    label: str = "",
+    *,
+    hint: str = "",
+    spread: bool = True,
+    slider: bool = False,
+    factor: float = 1.0,
+    derived: str = "",
 ) -> dict[str, Any]:
     """A value with its unit and standard uncertainty, its SI value underneath, perhaps with a slider.
 
@@ -132,7 +146,13 @@ def quantity_field(
     """
     text = state.text_of(key)
     value, plus_minus = split(text) if spread else (text, "")
-    row = _common(state, key, "quantity", label, hint) | {"value": value, "derived": derived if not value else "", "has_spread": spread, "spread": plus_minus, "si": si_text(state, key)}
+    row = _common(state, key, "quantity", label, hint) | {
+        "value": value,
+        "derived": derived if not value else "",
+        "has_spread": spread,
+        "spread": plus_minus,
+        "si": si_text(state, key),
+    }
     if slider:
         row["slider"] = slider_of(state, key)
     return row
