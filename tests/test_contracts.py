@@ -109,20 +109,25 @@ def test_wheel_holds_all_files(tmp_path):
     assert {line for line in tracked if line not in inside} == set()
 
 
-def _functions(tree: ast.Module):
-    return (node for node in ast.walk(tree) if isinstance(node, (ast.FunctionDef, ast.ClassDef)))
-
-
 def test_public_functions_have_docstrings():
     bare = []
     for path in SOURCES:
         tree = ast.parse(path.read_text(encoding="utf-8"))
         if not ast.get_docstring(tree) and tree.body:
             bare.append(f"{path}: module")
+        listed = _listed(tree)
         for node in tree.body:
-            if isinstance(node, (ast.FunctionDef, ast.ClassDef)) and not node.name.startswith("_") and not ast.get_docstring(node):
+            if isinstance(node, (ast.FunctionDef, ast.ClassDef)) and node.name in listed and not ast.get_docstring(node):
                 bare.append(f"{path}: {node.name}")
     assert bare == []
+
+
+def _listed(tree: ast.Module) -> set[str]:
+    """Names in __all__."""
+    for node in tree.body:
+        if isinstance(node, ast.Assign) and any(isinstance(t, ast.Name) and t.id == "__all__" for t in node.targets):
+            return set(ast.literal_eval(node.value))
+    return set()
 
 
 def test_no_commented_out_code_or_open_notes():

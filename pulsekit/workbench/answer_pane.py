@@ -124,7 +124,7 @@ def _compared(answer: Answer, reference: Answer) -> dict[str, str]:
         return {}
     words = {}
     for finding in getattr(compared, "findings", compared):
-        name = finding.name.removesuffix("_ratio")
+        name = finding.name.removeprefix("ratio_of_")
         if finding.name == name or finding.value is None or finding.low is None or finding.high is None:
             continue
         values = [round(100 * (number - 1), 1) for number in (finding.value, finding.low, finding.high)]
