@@ -292,3 +292,113 @@ def test_json_is_strict_and_whole(tmp_path, truth):
     answer = nominal(flow_case(tmp_path, truth))
     text = json.dumps(answer.to_dict(), allow_nan=False)
     assert set(json.loads(text)) >= {"findings", "checks", "remarks", "provenance"}
+
+
+def _measured(folder, truth, quantity):
+    """A case for each way of measuring, with the truth's curves and a little noise."""
+    rng = np.random.default_rng(3)
+    curves = {"velocity_envelope": "centreline_velocity", "pressure_drop": "pressure_gradient", "pressure": "pressure_gradient"}
+    values = np.asarray(getattr(truth, curves.get(quantity, quantity)).evaluate(TIME))
+    if quantity == "velocity_envelope":
+        values = values + 1.5 * abs(values.min())
+    values = values + 0.01 * np.ptp(values) * rng.normal(size=TIME.size)
+    unit = {"flow_rate": "m^3/s", "pressure_gradient": "Pa/m", "wall_shear_stress": "Pa", "pressure_drop": "Pa", "pressure": "Pa"}.get(quantity, "m/s")
+    write_table(folder / "m.csv", ["time (s)", f"x ({unit})"], TIME, values)
+    recording = {"file": "m.csv", "signal": "x", "quantity": quantity, "scale_uncertainty": "2 %"}
+    recording |= {"distance": "1 m ± 1 %"} if quantity == "pressure_drop" else {}
+    recording |= {"wave_speed": "8 m/s ± 10 %"} if quantity == "pressure" else {}
+    return pk.WallShearCase(
+        recording=recording, cycles={"period": "0.8 s", "harmonics": 3}, tube=TUBE, fluid=FLUID, uncertainty={"samples": 400}, folder=folder
+    )  # fmt: skip
+
+
+QUANTITIES = (
+    "flow_rate", "mean_velocity", "centreline_velocity", "velocity_envelope", "pressure_gradient", "pressure_drop", "pressure", "wall_shear_stress",
+)  # fmt: skip
+
+
+@pytest.mark.parametrize("quantity", QUANTITIES)
+def test_every_quantity_gets_intervals_that_hold_the_value(tmp_path, truth, quantity):
+    answer = pk.analyse(_measured(tmp_path, truth, quantity))
+    json.dumps(answer.to_dict(), allow_nan=False)
+    seen = 0
+    for finding in answer.findings:
+        if finding.value is None or finding.low is None or finding.high is None:
+            continue
+        seen += 1
+        slack = 1e-9 * abs(finding.value)
+        assert finding.low - slack <= finding.value <= finding.high + slack, finding.name
+        assert sum(finding.shares.values()) == pytest.approx(1, abs=1e-6) or not finding.shares
+    assert seen >= (3 if quantity == "pressure" else 20)
+    if quantity == "pressure":
+        assert answer.findings["time_averaged_wall_shear_stress"].value is None
+        assert answer.findings["pressure_gradient_amplitude"].low is not None
+    assert answer.overall
+
+
+def test_an_exact_case_has_no_interval_and_says_what_it_leaves_out(tmp_path, truth):
+    case = flow_case(tmp_path, truth, tube={"radius": "3.1 mm"}, fluid={"kind": "given", "density": "1060 kg/m^3", "viscosity": "3.5 mPa*s"})
+    answer = pk.analyse(case, samples=400)
+    left_out = " ".join(str(entry) for entry in answer.left_out_inputs)
+    for key in ("tube.radius", "fluid.viscosity", "fluid.density"):
+        assert key in left_out
+
+
+def test_one_way_in_one_way_through(tmp_path, truth):
+    """Python, a saved case file and the command line give the same numbers."""
+    from pulsekit.cli import main
+
+    case = flow_case(tmp_path, truth, noise=5, uncertainty={"samples": 300})
+    path = case.save(tmp_path / "case.toml")
+    assert main(["run", str(path), "--out", str(tmp_path / "out"), "--no-pictures"]) == 0
+    rows = {row["name"]: row for row in json.loads((tmp_path / "out" / "answer.json").read_text(encoding="utf-8"))["findings"]}
+    for finding in pk.analyse(case).findings:
+        assert (finding.value, finding.low, finding.high) == tuple(rows[finding.name][key] for key in ("value", "low", "high"))
+
+
+def test_cycles_from_a_trigger(tmp_path, truth):
+    values = truth.flow_rate.evaluate(TIME) * 6e7
+    phase = (TIME - 0.1) * FREQUENCY % 1.0
+    write_table(tmp_path / "t.csv", ["time (s)", "flow (mL/min)", "trig (V)"], TIME, values, 5.0 * (phase < 0.1))
+    case = pk.WallShearCase(
+        recording={"file": "t.csv", "signal": "flow", "quantity": "flow_rate", "trigger": "trig"}, tube=TUBE, fluid=FLUID, folder=tmp_path
+    )
+    answer = nominal(case)
+    # Ten rises, at 0.1 s and every 0.8 s on: nine whole cycles between them.
+    assert answer.cycles.count == 9
+    assert any("trigger" in remark for remark in answer.remarks)
+
+
+def test_wrapped_velocities_are_refused_with_the_frame(tmp_path, truth):
+    values = truth.mean_velocity.evaluate(TIME) * 100
+    values[700] -= 160.0
+    write_table(tmp_path / "w.csv", ["time (s)", "v (cm/s)"], TIME, values)
+    case = pk.WallShearCase(
+        recording={"file": "w.csv", "signal": "v", "quantity": "mean_velocity", "velocity_encoding": "80 cm/s"}, tube=TUBE, fluid=FLUID, folder=tmp_path
+    )
+    with pytest.raises(SignalError, match="frame 701"):
+        nominal(case)
+
+
+def test_reversal_that_may_have_been_rectified_is_remarked(tmp_path, truth):
+    values = np.abs(truth.mean_velocity.evaluate(TIME)) * 100
+    write_table(tmp_path / "r.csv", ["time (s)", "v (cm/s)"], TIME, values)
+    case = pk.WallShearCase(
+        recording={"file": "r.csv", "signal": "v", "quantity": "mean_velocity"}, cycles={"period": "0.8 s"}, tube=TUBE, fluid=FLUID, folder=tmp_path
+    )
+    assert any("rectified" in remark for remark in nominal(case).remarks)
+    write_table(tmp_path / "r.csv", ["time (s)", "v (cm/s)"], TIME, truth.mean_velocity.evaluate(TIME) * 100)
+    assert not any("rectified" in remark for remark in nominal(case).remarks)
+
+
+def test_area_per_frame_gives_radius_and_wall_motion(tmp_path, truth):
+    radius = 3.1 * (1 + 0.02 * np.cos(2 * np.pi * FREQUENCY * TIME))
+    write_table(tmp_path / "m.csv", ["time (s)", "v (cm/s)", "area (mm^2)"], TIME, truth.mean_velocity.evaluate(TIME) * 100, np.pi * radius**2)
+    case = pk.WallShearCase(
+        recording={"file": "m.csv", "signal": "v", "quantity": "mean_velocity", "area": "area", "sample_volume": "whole lumen"},
+        cycles={"period": "0.8 s"}, fluid=FLUID, folder=tmp_path,
+    )  # fmt: skip
+    answer = nominal(case)
+    # The mean of r^2 is R^2 (1 + 0.02^2/2); the area is written to twelve digits, the radius to six.
+    assert answer.flow.tube.radius == pytest.approx(3.1e-3 * math.sqrt(1 + 0.02**2 / 2), rel=1e-6)
+    assert answer.checks["rigid_wall"].value == pytest.approx(0.04, rel=0.01)

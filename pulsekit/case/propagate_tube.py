@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import Any
 
 import numpy as np
@@ -15,7 +15,7 @@ from ..appraisal.harmonic_draws import draw_harmonics, principal_steps
 from ..appraisal.intervals import SHARES_DEFINITION, interval, one_digit_fixed, shares
 from ..errors import StoppedError
 from ..fluids import sample_fluid
-from ..tube.ensemble import Ensemble, propagate
+from ..tube.ensemble import Ensemble, propagate, velocity_indices
 from ..tube.findings import peak_velocity
 from ..tube.sections import radius_of
 from .answer import Band, LeftOut
@@ -87,13 +87,17 @@ class _Model:
         density, viscosity = (np.broadcast_to(np.asarray(v, dtype=float), (samples,)) for v in (density, viscosity))
         coefficients = self.measurement.coefficients(raw, {**values, "radius": radius, "density": density, "viscosity": viscosity})
         quantity = self.measurement.quantity
+        measured = coefficients
         if quantity == "velocity_envelope":
             # The envelope's solution is nearly linear in the recording: samples ride on the exact one, harmonic by harmonic.
             quantity, coefficients = "mean_velocity", self._envelope(coefficients, radius, density, viscosity)
-        return propagate(
+        made = propagate(
             quantity, coefficients, angular_frequency=self.flow.mean_velocity.angular_frequency, radius=radius, viscosity=viscosity, density=density,
             instants=instants, peak_place=self.place, bands=bands,
         )  # fmt: skip
+        if measured is not coefficients:
+            made = replace(made, findings={**made.findings, **velocity_indices(measured, instants)})
+        return made
 
     def _envelope(self, coefficients: Any, radius: Any, density: Any, viscosity: Any) -> NDArray[np.complex128]:
         from ..exact.womersley import centreline_ratio

@@ -12,7 +12,7 @@ from numpy.typing import NDArray
 from ..errors import InputError
 from ..exact.womersley import centreline_ratio, shear_factor, velocity_profile
 
-__all__ = ["CURVES", "Ensemble", "propagate"]
+__all__ = ["CURVES", "Ensemble", "propagate", "velocity_indices"]
 
 #: Curves that get a band.
 CURVES = ("wall_shear_stress", "pressure_gradient", "centreline_velocity", "flow_rate")
@@ -295,6 +295,11 @@ def _velocity_indices(coefficients: NDArray[np.complex128], basis: NDArray[np.fl
     foot = coefficients.real.sum(axis=1)
     with np.errstate(divide="ignore", invalid="ignore"):
         return {"velocity_pulsatility_index": (high - low) / coefficients[:, 0].real, "velocity_resistive_index": (high - foot) / high}
+
+
+def velocity_indices(coefficients: NDArray[np.complex128], instants: int) -> dict[str, NDArray[np.float64]]:
+    """Pulsatility and resistive index of samples of a measured velocity, coefficients (S, N + 1)."""
+    return _velocity_indices(coefficients, _basis(coefficients.shape[1] - 1, instants))
 
 
 def _near(phase: NDArray[np.float64]) -> NDArray[np.float64]:
