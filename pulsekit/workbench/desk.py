@@ -14,7 +14,7 @@ from ..case import Answer, Case, Workspace, analyse, load_case
 from ..case.case import make_case
 from ..case.schema import key_of, sections_of
 from ..errors import CaseError, MissingColumnError, MissingFileError, PulsekitError, RecordingError, SignalError, StoppedError
-from .fields import value_of
+from .fields import label_of, value_of
 
 __all__ = ["DeskState"]
 
@@ -67,6 +67,7 @@ class DeskState:
         self._gesture = ""
         if source is not None:
             self.open(source)
+            self._past.clear()
 
     # What is there
 
@@ -211,10 +212,18 @@ class DeskState:
 
     def _refuse(self, problem: PulsekitError, glimpse: Any) -> None:
         """Keep the last good answer, unless it is of another recording."""
-        self.fault = (place_of(problem, self.kind), str(problem))
+        self.fault = (place_of(problem, self.kind), self._words(problem))
         if self.answer is not None and self.answer.case.get("recording.file") != self.case.get("recording.file"):
             self.answer = None
         self.glimpse = glimpse
+
+    def _words(self, problem: PulsekitError) -> str:
+        """An error's sentence; what is merely not filled in yet is asked for rather than complained of."""
+        key = getattr(problem, "key", None)
+        taken = key_of(key) if key else None
+        if isinstance(problem, CaseError) and key and taken is not None and self.case.get(key) is None and "is missing" in str(problem):
+            return f"Needed: {label_of(key).lower()} ({taken.help})"
+        return str(problem).replace(f"{self.case.path}: ", "")
 
     def glimpse_of(self, case: Case) -> Any:
         """What can be shown of a case that cannot be answered; None if nothing."""

@@ -6,6 +6,7 @@ import re
 from collections.abc import Iterable, Mapping, Sequence
 from typing import TYPE_CHECKING, Any
 
+from ..case.case import read_given
 from ..case.schema import key_of
 from ..errors import InputError, PulsekitError
 from ..quantities import DIMENSIONS, from_si
@@ -137,7 +138,6 @@ def quantity_field(
     hint: str = "",
     spread: bool = True,
     slider: bool = False,
-    factor: float = 1.0,
     derived: str = "",
 ) -> dict[str, Any]:
     """A value with its unit and standard uncertainty, its SI value underneath, perhaps with a slider.
@@ -154,7 +154,7 @@ def quantity_field(
         "si": si_text(state, key),
     }
     if slider:
-        row["slider"] = slider_of(state, key)
+        row["slider"] = slider_of(state, key, derived)
     return row
 
 
@@ -172,12 +172,12 @@ def si_text(state: DeskState, key: str) -> str:
     return f"{given.value:.5g} {unit}".replace("e-0", "e-").replace("*", "·").strip()
 
 
-def slider_of(state: DeskState, key: str) -> dict[str, Any] | None:
-    """Ends, step and place of a slider in the unit that was typed; None while the key has no number."""
-    if state.case.get(key) is None:
+def slider_of(state: DeskState, key: str, derived: str = "") -> dict[str, Any] | None:
+    """Ends, step and place of a slider in the unit that was typed (or of the derived text); None while there is no number."""
+    if state.case.get(key) is None and not derived:
         return None
     try:
-        given = state.case.given(key)
+        given = state.case.given(key) if state.case.get(key) is not None else read_given(key, derived)
         number = float(from_si(given.value, given.unit)) if given.unit else given.value
     except PulsekitError:
         return None

@@ -9,8 +9,9 @@ from __future__ import annotations
 import logging
 import time
 import traceback
-from collections.abc import Callable, Sequence
+from collections.abc import Callable, Mapping, Sequence
 from pathlib import Path
+from types import MappingProxyType
 from typing import Any
 
 import anywidget
@@ -63,6 +64,7 @@ class Screen(anywidget.AnyWidget):
     _css = ""
     title = ""
     rows: Sequence[str] = ()  # areas of the grid of pictures
+    names: Mapping[str, str] = MappingProxyType({})  # area -> title, for pictures that cannot be drawn yet
     cursors: dict[str, dict[str, Any]] = {}  # noqa: RUF012 - a fixed table of the class
     lead: Sequence[str] = ()
     cautions: Sequence[str] = ()
@@ -104,7 +106,7 @@ class Screen(anywidget.AnyWidget):
 
     def _desk(self) -> dict[str, Any]:
         return {
-            "kind": self.state.kind, "title": self.title, "rows": list(self.rows), "cursors": self.cursors, "saves": list(SAVED),
+            "kind": self.state.kind, "title": self.title, "rows": list(self.rows), "names": dict(self.names), "cursors": self.cursors, "saves": list(SAVED),
             "field_stops": [list(stop) for stop in FIELD_STOPS],
         }  # fmt: skip
 

@@ -9,7 +9,7 @@ from ..case import Case
 from ..report.tube_words import CAUTIONS, LEAD_FINDINGS
 from .charts import Panel
 from .screen import Screen, script, style
-from .wall_shear_charts import LAYOUT, wall_shear_panels
+from .wall_shear_charts import LAYOUT, NAMES, wall_shear_panels
 from .wall_shear_givens import wall_shear_givens
 from .wall_shear_state import WallShearState
 
@@ -39,6 +39,7 @@ class WallShearWorkbench(Screen):
     _css = style()
     title = "Wall shear"
     rows = LAYOUT
+    names = NAMES
     cursors = {"time": {"label": "Instant", "unit": "s", "steps": 128, "plays": True}}  # noqa: RUF012
     lead = LEAD_FINDINGS
     cautions = CAUTIONS

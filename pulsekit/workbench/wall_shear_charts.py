@@ -13,7 +13,7 @@ from ..report.drawing import shown, unit_of
 from ..report.tube_figures import measured_name
 from .charts import Axis, Panel, Series, thinned
 
-__all__ = ["LAYOUT", "wall_shear_panels"]
+__all__ = ["LAYOUT", "NAMES", "wall_shear_panels"]
 
 #: Places of the panels in the grid of the page, and which need a solved flow.
 LAYOUT = (
@@ -22,6 +22,16 @@ LAYOUT = (
     "profile field",
     "wall_shear_stress pressure_gradient",
 )
+#: Titles of the pictures.
+NAMES = {
+    "recording": "Recording and its cycles",
+    "cycles": "All cycles on one period",
+    "harmonics": "Harmonics kept",
+    "profile": "Velocity across the diameter",
+    "field": "Velocity over radius and time",
+    "wall_shear_stress": "Wall shear stress",
+    "pressure_gradient": "Pressure gradient",
+}
 _INSTANTS = 256
 _RADII = 64
 
@@ -60,7 +70,7 @@ def recording_panel(answer: Any, reference: Any = None) -> Panel:
     states = ["" if index not in reasons else str(reasons[index]) for index in range(edges.size - 1)]
     kept = list(cycles.kept)
     return Panel(
-        id="recording", title="Recording and its cycles", click="leave_out",
+        id="recording", title=NAMES["recording"], click="leave_out",
         note=f"{cycles.count} of {edges.size - 1} cycles used; click one to leave it out",
         x=Axis(label="Time (s)", low=float(time[0]), high=float(time[-1]), link="time", starts=edges[:-1][kept], lengths=np.diff(edges)[kept]),
         y=Axis(label=_label(answer, name, dimension)),
@@ -91,9 +101,7 @@ def cycles_panel(answer: Any, reference: Any = None) -> Panel:
             kind="line", role="flow", arrays=[_instants(answer), _curve(answer, answer.harmonics, dimension)], name="rebuilt", reading=True
         ),
     ]
-    return Panel(
-        id="cycles", title="All cycles on one period", x=_cycle_axis(answer), y=Axis(label=_label(answer, name, dimension)), series=series
-    )
+    return Panel(id="cycles", title=NAMES["cycles"], x=_cycle_axis(answer), y=Axis(label=_label(answer, name, dimension)), series=series)
 
 
 def harmonics_panel(answer: Any, reference: Any = None) -> Panel:
@@ -119,7 +127,7 @@ def harmonics_panel(answer: Any, reference: Any = None) -> Panel:
             ),
         )
     return Panel(
-        id="harmonics", title="Harmonics kept", note=f"fundamental {harmonics.frequency:.4g} Hz",
+        id="harmonics", title=NAMES["harmonics"], note=f"fundamental {harmonics.frequency:.4g} Hz",
         x=Axis(label="Harmonic", low=0.4, high=max(float(harmonics.count), 1.0) + 0.6), y=Axis(label=_label(answer, name, dimension), zero=True),
         series=series,
     )  # fmt: skip
@@ -162,13 +170,13 @@ def field_panels(answer: Any, reference: Any = None) -> tuple[Panel, Panel]:
         wall = max(wall, float(other_places[-1]))
     profile = Panel(
         id="profile",
-        title="Velocity across the diameter",
+        title=NAMES["profile"],
         x=Axis(label=distance, low=-wall, high=wall),
         y=Axis(label=speed, zero=True),
         series=across,
     )
     over_time = Panel(
-        id="field", title="Velocity over radius and time", x=_cycle_axis(answer),
+        id="field", title=NAMES["field"], x=_cycle_axis(answer),
         y=Axis(label=distance, low=float(places[0]), high=float(places[-1])), series=[heat],
     )  # fmt: skip
     return profile, over_time
@@ -193,12 +201,12 @@ def _band_panel(answer: Any, reference: Any, *, name: str, title: str, dimension
         at = np.append(np.asarray(band.time), np.asarray(band.time)[0] + _period(answer))
         series.append(Series(kind="band", role=role, arrays=[at, low, high], name="95 % band"))
     series.append(Series(kind="rule", role="ink", arrays=[[0.0]], thin=True))
-    series.append(Series(kind="line", role=role, arrays=[time, curve], name="at the stated givens", reading=True))
+    series.append(Series(kind="line", role=role, arrays=[time, curve], name="stated givens", reading=True))
     if name == "wall_shear_stress" and answer.flow.mean_known:
         steady = answer.findings.get("steady_wall_shear_stress")
         if steady is not None and steady.value is not None:
             level = float(shown(answer, steady.value, dimension))
-            series.append(Series(kind="rule", role="steady", dash=True, arrays=[[level]], name="steady estimate"))
+            series.append(Series(kind="rule", role="steady", dash=True, arrays=[[level]], name="steady"))
     return Panel(id=name, title=title, x=_cycle_axis(answer), y=Axis(label=_label(answer, title, dimension), zero=True), series=series)
 
 

@@ -14,9 +14,10 @@ class AnswerPane {
     this.extra = make("div", {});
     this.saves = make("div", { class: "pk-buttons", role: "group", "aria-label": "Save" });
     this.saved = make("div", { class: "pk-saved", "aria-live": "polite" });
-    this.pin = make("button", { type: "button", class: "pk-small", onclick: () => bench.ask({ do: bench.status.pinned ? "unpin" : "pin" }) }, "Pin to compare");
+    this.pin = make("button", { type: "button", class: "pk-small", title: "Keep this case as the one to compare with", onclick: () => bench.ask({ do: bench.status.pinned ? "unpin" : "pin" }) }, "Pin");
+    this.saves.append(make("span", { class: "pk-name" }, "Save"));
     for (const what of bench.desk.saves) {
-      this.saves.append(make("button", { type: "button", class: "pk-small", onclick: () => bench.ask({ do: "save", what }) }, `Save ${what}`));
+      this.saves.append(make("button", { type: "button", class: "pk-small", "aria-label": `Save ${what}`, "data-save": what, onclick: () => bench.ask({ do: "save", what }) }, what));
     }
     this.body = make("div", { class: "pk-answer-body" }, this.reference, this.head, this.findings, this.improve, this.notes, make("h4", {}, "Checks"), this.checks,
       this.extra, make("details", { class: "pk-more" }, this.remarksTitle, this.remarks));
@@ -37,7 +38,7 @@ class AnswerPane {
     say(this.reference, answer.reference ? `Changes are against the pinned case: ${answer.reference}` : "");
     this.reference.hidden = !answer.reference;
     say(this.head, answer.interval_head);
-    this.list(this.findings, this.rows, answer.findings, (row) => this.finding(row));
+    this.list(this.findings, this.rows, answer.findings, (row) => this.finding(row), answer.full);
     this.list(this.checks, this.checkRows, answer.checks, (row) => this.check(row));
     say(this.improve, answer.improve);
     this.words(this.notes, answer.notes);
@@ -54,11 +55,11 @@ class AnswerPane {
   }
 
   // Rows keep their nodes (and whether they are unfolded) as long as their name is there.
-  list(parent, kept, rows, maker) {
+  list(parent, kept, rows, maker, full = true) {
     const order = rows.map((row) => row.name).join();
     for (const row of rows) {
       if (!kept.has(row.name)) kept.set(row.name, maker(row));
-      kept.get(row.name).update(row);
+      kept.get(row.name).update(row, full);
     }
     if (parent.dataset.order !== order) parent.replaceChildren(...rows.map((row) => kept.get(row.name).node));
     parent.dataset.order = order;
@@ -73,11 +74,12 @@ class AnswerPane {
     let shown = "";
     return {
       node,
-      update(row) {
+      update(row, full) {
         node.dataset.name = row.name;
         node.classList.toggle("lead", row.lead);
-        say(label, row.label); say(value, row.value); say(unit, row.unit); say(change, row.change); say(share, row.share);
-        say(interval, row.interval && row.interval !== "–" ? row.interval : "");
+        say(label, row.label); say(value, row.value); say(unit, row.unit); say(change, row.change);
+        say(share, full ? row.share : row.lead ? "…" : "");
+        say(interval, !full ? "…" : row.interval !== "–" ? row.interval : "");
         say(reliance, `${{ usable: "●", indicative: "◐", "not usable": "▲" }[row.reliance]} ${row.reliance}`);
         reliance.className = `pk-f-reliance ${row.reliance.replace(" ", "-")}`;
         say(because, row.because); because.hidden = !row.because;
@@ -105,8 +107,8 @@ class AnswerPane {
   }
 
   status(status) {
-    say(this.pin, status.pinned ? "Unpin" : "Pin to compare");
-    for (const button of [this.pin, ...this.saves.children]) button.disabled = !status.has_answer;
+    say(this.pin, status.pinned ? "Unpin" : "Pin");
+    for (const button of [this.pin, ...this.saves.querySelectorAll("button")]) button.disabled = !status.has_answer;
   }
 
   // A file that was saved: its place, and the file itself to open from here.

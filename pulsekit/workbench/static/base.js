@@ -42,6 +42,12 @@ function ticksOf(low, high, most) {
   return { at, decimals, step };
 }
 
+function wholeTicks(low, high, most) {
+  const step = Math.max(1, Math.ceil((high - low) / most)), at = [];
+  for (let k = Math.ceil(Math.max(low, 1)); k <= high; k += step) at.push(k);
+  return at;
+}
+
 function written(number, decimals) {
   if (!Number.isFinite(number)) return "–";
   if (number !== 0 && (Math.abs(number) >= 1e5 || Math.abs(number) < 1e-4)) {

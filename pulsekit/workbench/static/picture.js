@@ -101,8 +101,7 @@ class Picture {
     pen.clearRect(0, 0, this.width, this.height);
     const panel = this.panel;
     this.root.classList.toggle("empty", !panel);
-    if (!panel) { say(this.heading, this.bench.names[this.id] || ""); this.legend.replaceChildren(); say(this.reading, ""); return; }
-    this.bench.names[this.id] = panel.title;
+    if (!panel) { say(this.heading, this.bench.names[this.id] || this.id); this.legend.replaceChildren(); say(this.reading, ""); return; }
     const heat = panel.series.some((series) => series.kind === "heat");
     this.left = 50; this.right = this.width - (heat ? 50 : 10); this.top = 4; this.foot = this.height - 29;
     this.scale();
@@ -113,7 +112,7 @@ class Picture {
       box.setAttribute("x", this.left - (clip ? 1 : 0)); box.setAttribute("y", this.top);
       box.setAttribute("width", Math.max(this.right - this.left, 1) + (clip ? 2 : 0)); box.setAttribute("height", Math.max(this.foot - this.top, 1));
     }
-    this.paintAxes();
+    this.paintAxes(heat);
     this.paintLegend();
     for (const series of panel.series) if (painters[series.kind]) painters[series.kind](this, series);
     this.paintStale();
@@ -133,13 +132,13 @@ class Picture {
     }
   }
 
-  paintAxes() {
+  paintAxes(bare) {
     const { x, y } = this.panel;
     const yTicks = ticksOf(this.y0, this.y1, between((this.foot - this.top) / 26, 2, 6));
     for (const value of yTicks.at) {
       const at = this.py(value);
       if (at < this.top - 1 || at > this.foot + 1) continue;
-      this.axes.append(draw("path", { class: "pk-grid", d: `M${this.left} ${at.toFixed(1)}H${this.right}` }));
+      if (!bare) this.axes.append(draw("path", { class: "pk-grid", d: `M${this.left} ${at.toFixed(1)}H${this.right}` }));
       const text = draw("text", { class: "pk-tick end", x: this.left - 5, y: between(at + 3.5, this.top + 7, this.foot + 4) });
       text.textContent = written(value, yTicks.decimals);
       this.axes.append(text);
@@ -147,7 +146,8 @@ class Picture {
     const listed = x.ticks ? x.ticks.map(([at, text]) => ({ at, text })) : null;
     const xTicks = ticksOf(this.x0, this.x1, between((this.right - this.left) / 58, 2, 14));
     const whole = x.label === "Harmonic";
-    const marks = listed || xTicks.at.filter((v) => !whole || Math.abs(v - Math.round(v)) < 1e-6).map((at) => ({ at, text: written(at, whole ? 0 : xTicks.decimals) }));
+    const places = whole ? wholeTicks(this.x0, this.x1, (this.right - this.left) / 26) : xTicks.at;
+    const marks = listed || places.map((at) => ({ at, text: written(at, whole ? 0 : xTicks.decimals) }));
     for (const { at, text: words } of marks) {
       const place = this.px(at);
       if (place < this.left - 1 || place > this.right + 1) continue;

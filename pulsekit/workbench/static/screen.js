@@ -6,7 +6,7 @@ class Bench {
     this.model = model;
     this.key = ++benches;
     this.desk = model.get("desk");
-    this.names = {};
+    this.names = this.desk.names;
     this.panels = {};
     this.pictures = {};
     this.status = model.get("status");
@@ -26,6 +26,7 @@ class Bench {
   }
 
   build(host) {
+    this.host = host;
     this.busy = make("span", { class: "pk-busy", role: "status" });
     this.bar = make("progress", { max: 1, "aria-label": "Progress" });
     this.stop = make("button", { type: "button", class: "pk-small", onclick: () => this.ask({ do: "stop" }) }, "Stop");
@@ -55,6 +56,7 @@ class Bench {
     });
     host.append(this.root);
     this.fitHeight();
+    requestAnimationFrame(() => this.fitHeight());
     this.onResize = () => this.fitHeight();
     window.addEventListener("resize", this.onResize);
   }
@@ -63,7 +65,8 @@ class Bench {
   fitHeight() {
     const lab = document.querySelector(".jp-LabShell, .jp-NotebookShell");
     const outer = lab ? this.root.closest(".jp-WindowedPanel-outer, .jp-Notebook, .jp-NotebookPanel-notebook") : null;
-    const room = outer ? outer.getBoundingClientRect().height - 12 : window.innerHeight - 4;
+    const above = this.root.getBoundingClientRect().top + window.scrollY;
+    const room = outer ? outer.getBoundingClientRect().height - 12 : window.innerHeight - Math.min(above, 40) - 4;
     this.root.style.setProperty("--tall", `${Math.max(room, 620)}px`);
   }
 
