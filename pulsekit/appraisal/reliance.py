@@ -105,3 +105,27 @@ def with_reliance(findings: Findings, checks: Checks, depends: Mapping[str, Iter
 def worst_checks(checks: Checks) -> tuple[list[Check], list[Check], list[Check]]:
     """Return the checks that fail, are doubtful, and are unknown."""
     return tuple([check for check in checks if check.verdict == word] for word in ("fails", "doubtful", "unknown"))  # type: ignore[return-value]
+
+
+_LINE_MODEL = ("source_model", "friction", "plane_waves", "linear", "wall", "termination", "cavitation")
+_RECORDED = ("recorded_peak_to_peak", "recorded_peak_to_peak_999", "recorded_highest_pressure", "recorded_lowest_pressure", "asynchronous_share")
+_NOT_OF_SOURCE = ("wave_speed", "first_resonance", "first_resonance_damping", "attenuation", "steady_pressure_drop")
+
+
+def line_depends(findings: Iterable[object], checks: Checks) -> dict[str, tuple[str, ...]]:
+    """Checks on which each finding of a line depends: the model's, those of its restrictors and dampers, and the stations'.
+
+    What was recorded depends on no model; resonances, speeds and steady drops not on the source.
+    """
+    own = tuple(name for name in checks.names if name.startswith(("restrictor_", "damper_")))
+    measured = tuple(name for name in checks.names if name.startswith(("mean_", "tapping_")) and checks[name].verdict != "unknown")
+    table: dict[str, tuple[str, ...]] = {}
+    for finding in findings:
+        name = getattr(finding, "name", "")
+        if name in _RECORDED:
+            table[name] = ()
+        elif name in _NOT_OF_SOURCE:
+            table[name] = tuple(check for check in (*_LINE_MODEL, *own) if check not in ("source_model", "cavitation"))
+        else:
+            table[name] = (*_LINE_MODEL, *own, *measured)
+    return table
