@@ -20,10 +20,10 @@ import numpy as np
 
 import pulsekit as pk
 from pulsekit.appraisal.distributions import draw
-from pulsekit.case.propagate_tube import propagate_tube
 from pulsekit.case.liquids import fluid_of
-from pulsekit.case.wall_shear import solve_measurement, tube_of
 from pulsekit.case.measurement import measure
+from pulsekit.case.propagate_tube import propagate_tube
+from pulsekit.case.wall_shear import solve_measurement, tube_of
 from pulsekit.quantities import parse_given
 from pulsekit.tube.findings import tube_values
 

@@ -100,8 +100,8 @@ class Table(Generic[Row]):
     __slots__ = ("_index", "_rows")
 
     def __init__(self, rows: Iterable[Row] = ()) -> None:
-        self._rows = tuple(rows)
-        self._index = {row.name: position for position, row in enumerate(self._rows)}
+        self._rows: tuple[Row, ...] = tuple(rows)
+        self._index: dict[str, int] = {row.name: position for position, row in enumerate(self._rows)}
         if len(self._index) != len(self._rows):
             raise InputError("two rows of a table have the same name", name="rows")
 

@@ -8,16 +8,27 @@ from numpy.typing import NDArray
 from ..errors import InputError
 from ..trace.harmonics import Harmonics
 
-__all__ = ["draw_harmonics", "principal_steps"]
+__all__ = ["covariance_root", "draw_harmonics", "multivariate_t", "principal_steps"]
 
 
-def _root(covariance: NDArray[np.float64]) -> NDArray[np.float64]:
+def covariance_root(covariance: NDArray[np.float64]) -> NDArray[np.float64]:
     """Matrix L with L L^T = covariance, also where the covariance is singular (few cycles)."""
     scale = np.sqrt(np.clip(np.diag(covariance), 0.0, None))
     safe = np.where(scale > 0, scale, 1.0)
     values, vectors = np.linalg.eigh(covariance / np.outer(safe, safe))
     keep = values > values.max(initial=0.0) * 1e-12
     return np.asarray(safe[:, None] * vectors[:, keep] * np.sqrt(values[keep]))
+
+
+def multivariate_t(
+    covariance: NDArray[np.float64], degrees_of_freedom: float | None, samples: int, rng: np.random.Generator
+) -> NDArray[np.float64]:
+    """Draws about zero, shape (samples, n): normal ones over sqrt(chi^2/nu), one chi^2 for all coordinates of a sample."""
+    root = covariance_root(covariance)
+    apart = rng.standard_normal((samples, root.shape[1])) @ root.T
+    if degrees_of_freedom is not None and np.isfinite(degrees_of_freedom):
+        apart *= np.sqrt(degrees_of_freedom / rng.chisquare(degrees_of_freedom, samples))[:, None]
+    return np.asarray(apart)
 
 
 def _complex(vectors: NDArray[np.float64]) -> NDArray[np.complex128]:
@@ -52,11 +63,7 @@ def draw_harmonics(harmonics: Harmonics, samples: int, rng: np.random.Generator)
     estimate = np.asarray(harmonics.coefficients)
     if harmonics.covariance is None or not np.any(harmonics.covariance):
         return np.broadcast_to(estimate, (samples, estimate.size))
-    root = _root(np.asarray(harmonics.covariance))
-    apart = rng.standard_normal((samples, root.shape[1])) @ root.T
-    freedom = harmonics.degrees_of_freedom
-    if freedom is not None and np.isfinite(freedom):
-        apart *= np.sqrt(freedom / rng.chisquare(freedom, samples))[:, None]
+    apart = multivariate_t(np.asarray(harmonics.covariance), harmonics.degrees_of_freedom, samples, rng)
     return _complex(_vector(estimate) + apart)
 
 
@@ -64,4 +71,4 @@ def principal_steps(harmonics: Harmonics) -> NDArray[np.complex128]:
     """One standard deviation along each principal direction of the covariance, shape (directions, N + 1), for first-order sums."""
     if harmonics.covariance is None or not np.any(harmonics.covariance):
         return np.empty((0, harmonics.coefficients.size), dtype=complex)
-    return _complex(_root(np.asarray(harmonics.covariance)).T)
+    return _complex(covariance_root(np.asarray(harmonics.covariance)).T)
