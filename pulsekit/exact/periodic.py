@@ -116,11 +116,16 @@ def _polished(
     if row.size == 0:
         return best, best_phase
     phase = column * step
+    rival, order = rows[row], np.arange(rows.shape[1])
     for _ in range(6):
-        slope, curve = _at(rows[row], phase, 1), _at(rows[row], phase, 2)
-        move = np.divide(-slope, curve, out=np.zeros_like(slope), where=sign * curve < 0)
-        phase = phase + np.clip(move, -step, step)
-    value = _at(rows[row], phase)
+        # Both derivatives from one exponential: i n and (i n)^2 times the same terms.
+        terms = rival * np.exp(1j * phase[:, None] * order)
+        slope, curve = -(terms.imag @ order), -(terms.real @ order**2)
+        move = np.clip(np.divide(-slope, curve, out=np.zeros_like(slope), where=sign * curve < 0), -step, step)
+        phase = phase + move
+        if np.all(np.abs(move) < 1e-9):  # the error after this step is of the order of its square
+            break
+    value = _at(rival, phase)
     for r, v, p in zip(row, value, phase, strict=True):
         if sign * v > sign * best[r]:
             best[r], best_phase[r] = v, p
