@@ -56,7 +56,8 @@ class Bench {
     });
     host.append(this.root);
     this.fitHeight();
-    requestAnimationFrame(() => this.fitHeight());
+    // The output area gets its place and padding after this.
+    for (const wait of [0, 150, 600, 2000]) setTimeout(() => this.root.isConnected && this.fitHeight(), wait);
     this.onResize = () => this.fitHeight();
     window.addEventListener("resize", this.onResize);
   }
