@@ -16,7 +16,7 @@ from ..quantities import Given
 from ..trace import Harmonics, decompose
 from .case import Case
 from .line_stations import Station, read_channel, turns_of
-from .workspace import Workspace
+from .workspace import Workspace, part_key
 
 __all__ = ["Driven", "pump_number", "source_of"]
 
@@ -137,9 +137,7 @@ def source_of(case: Case, line: Line, stations: Sequence[Station], workspace: Wo
             raise case.missing("operation.speed")
         return _pumps(case, line, speed)
     if kind == "flow trace":
-        signal, recording = read_channel(case, prefix, workspace, "flow_rate")
-        cycles = turns_of(case, prefix, signal, recording, speed, pump_number(case))
-        raw = decompose(cycles, count=case.get("cycles.harmonics"))
+        signal, recording, cycles, raw = _recorded(case, prefix, workspace, "flow_rate", speed)
         return Driven(
             source=FlowSource(raw, _impedance(case, prefix, line), model="flow trace"), model="flow trace", signal=signal, cycles=cycles, raw=raw,
             recording=recording, remarks=(*recording.remarks, *raw.remarks), scale=_scale(case, prefix),
@@ -165,6 +163,20 @@ def _from_station(station: Station) -> Driven:
     )  # fmt: skip
 
 
+def _recorded(case: Case, prefix: str, workspace: Workspace, wanted: str, speed: float | None) -> tuple[Any, Any, Any, Harmonics]:
+    """Signal, recording, turns and orders of a recorded source, remembered by the parts of the case that they depend on."""
+    signal, recording = read_channel(case, prefix, workspace, wanted)
+
+    def make() -> tuple[Any, Harmonics]:
+        cycles = turns_of(case, prefix, signal, recording, speed, pump_number(case))
+        asked = case.get("cycles.harmonics")
+        return cycles, decompose(cycles, count=None if asked is None else int(asked))
+
+    key = (*part_key(f"orders of {prefix}", case, prefix, "cycles", "recording"), speed, recording.sha256)
+    cycles, raw = workspace.remember(key, make)
+    return signal, recording, cycles, raw
+
+
 def _measured(case: Case, prefix: str, workspace: Workspace, stations: Sequence[Station], speed: float | None) -> Driven:
     if case.get(f"{prefix}.file") is None:
         if not stations:
@@ -172,12 +184,7 @@ def _measured(case: Case, prefix: str, workspace: Workspace, stations: Sequence[
         place = case.value(f"{prefix}.station")
         chosen = stations[0] if place is None else min(stations, key=lambda station: abs(station.position - place))
         return _from_station(chosen)
-    signal, recording = read_channel(case, prefix, workspace)
-    cycles = turns_of(case, prefix, signal, recording, speed, pump_number(case))
-    from ..trace.decompose import most_harmonics
-
-    asked = case.get("cycles.harmonics")
-    raw = decompose(cycles, count=min(most_harmonics(cycles), int(asked) if asked is not None else 60))
+    signal, recording, cycles, raw = _recorded(case, prefix, workspace, "pressure", speed)
     place = case.value(f"{prefix}.station")
     if place is None:
         raise case.missing(f"{prefix}.station")

@@ -22,8 +22,6 @@ from .workspace import Workspace
 
 __all__ = ["Station", "read_channel", "read_stations", "recording_checks", "turns_of"]
 
-_MOST_ORDERS = 60
-
 
 @dataclass(frozen=True, eq=False, kw_only=True)
 class Station:
@@ -221,10 +219,7 @@ def _harmonics(
         else:
             cycles = find_cycles(signal, onsets=turns.edges, leave_out=[index + 1 for index, _ in turns.left_out], keep_odd=True, align=turns.align)
         asked = case.get("cycles.harmonics")
-        from ..trace.decompose import most_harmonics
-
-        most = min(most_harmonics(cycles), _MOST_ORDERS)
-        return cycles, decompose(cycles, count=min(int(asked), most) if asked is not None else most)
+        return cycles, decompose(cycles, count=None if asked is None else int(asked))
 
     found: tuple[Cycles, Harmonics] = workspace.remember(key, make)
     return found

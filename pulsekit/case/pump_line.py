@@ -52,6 +52,8 @@ def _floors(case: Case, line: Any, ambient: float) -> dict[str, float]:
         given = case.maybe(key)
         if given is not None:
             rows[key.rpartition(".")[2]] = absolute(given, ambient).value
+    if line.fluid.kind == "hydraulic oil" and "gas_release_pressure" not in rows:
+        rows["gas_release_pressure_of_oil_(trade)"] = 0.8e5  # oil lets air out below about 0.5 to 0.8 bar(a): trade
     if "vapour_pressure" not in rows and line.fluid.vapour_pressure is not None:
         rows["vapour_pressure"] = line.fluid.vapour_pressure
     return rows

@@ -52,6 +52,11 @@ def reader_units(case: Case, signal: Any = None) -> Mapping[str, str]:
                 if given.unit and given.dimension == dimension and isinstance(case.get(key), str):
                     units[dimension] = given.unit
                     break
+    if case.kind == "pump line":
+        units["largest_wall_shear_amplitude"] = "Pa"
+        speed = case.maybe("operation.speed") or case.maybe("operation.motor_speed")
+        if speed is not None and speed.unit:
+            units |= dict.fromkeys(("worst_speed_within_10_percent", "worst_speed_in_range"), speed.unit)
     for name, unit in (case.get("report.units") or {}).items():
         parse_unit(str(unit))
         if name in DIMENSIONS and unit_dimension(str(unit)) not in (name, None):
