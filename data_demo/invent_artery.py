@@ -105,7 +105,7 @@ def gated(folder: Path) -> None:
     """A phase-contrast cycle of 24 frames that stops short of the R-R interval; frames across, quantities down, two vessels in the file."""
     rng = np.random.default_rng(20260102)
     period, step, frames = 0.900, 0.0358, 24
-    shape = {"level": 5.0, "peak": 62.0, "back": 13.0, "second": 9.0, "quick": 1.25}  # mean velocity [cm/s]
+    shape = {"level": 5.0, "peak": 62.0, "back": 13.0, "second": 9.0, "quick": 1.6}  # mean velocity [cm/s]
     coefficients = coefficients_of(beat(np.arange(FINE) / FINE * period, **shape), 24) * 0.01
     order = np.arange(25)
     starts = np.arange(frames) * step

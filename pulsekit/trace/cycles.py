@@ -12,13 +12,15 @@ from numpy.typing import ArrayLike, NDArray
 
 from ..errors import InputError, SignalError
 from ..quantities import to_si
+from .feet import as_well_by_one_period, locate_feet, refine_feet
 from .odd_cycles import odd_cycles
-from .periods import constant_period, find_period, locate_feet, refine_period
+from .periods import find_period, refine_period
 from .signal import Signal
 
 __all__ = ["Cycles", "find_cycles"]
 
 ONSET_SCATTER = 0.03  # relative scatter of the periods above which cycles are aligned at their onset
+_LEAST_SAMPLES = 0.75  # share of a cycle's samples that must be there
 _SHORT_BY = 0.15  # a gated cycle may stop this share of the period short of its end
 
 
@@ -109,10 +111,30 @@ class Cycles:
             phases.append((time[row] - begin) / length)
         return np.concatenate(rows), np.concatenate(owners), np.concatenate(phases)
 
+    @cached_property
+    def _good(self) -> tuple[NDArray[np.float64], NDArray[np.float64]]:
+        """Time and values of the samples that are not left out."""
+        weights = self.signal.weights
+        good = slice(None) if weights is None else weights > 0
+        return self.signal.time[good], self.signal.values[good]
+
+    def integrals(self) -> NDArray[np.float64]:
+        """Integral over time of each used cycle, from onset to onset, shape (count,). [SI times s]"""
+        time, values = self._good
+        running = np.concatenate([[0.0], np.cumsum(np.diff(time) * (values[1:] + values[:-1]) / 2)])
+
+        def until(instant: NDArray[np.float64]) -> NDArray[np.float64]:
+            place = np.clip(np.searchsorted(time, instant, side="right") - 1, 0, time.size - 2)
+            here = np.interp(instant, time, values)
+            return np.asarray(running[place] + (instant - time[place]) * (values[place] + here) / 2)
+
+        chosen = list(self.kept)
+        return until(self.edges[1:][chosen]) - until(self.edges[:-1][chosen])
+
     def folded(self, phase: ArrayLike) -> NDArray[np.float64]:
         """Each used cycle at common phases (0..1 of the base period), shape (count, n_phase); NaN beyond a short cycle's end."""
         places = np.asarray(phase, dtype=float)
-        time, values = self.signal.time, self.signal.values
+        time, values = self._good
         out = np.empty((self.count, places.size))
         for row, index in enumerate(self.kept):
             begin, end = self.edges[index], self.edges[index + 1]
@@ -195,7 +217,7 @@ def find_cycles(
     if len(signal) < 4:
         raise SignalError(f"signal {signal.name!r} has {len(signal)} samples; at least 4 are needed", column=signal.name)
     if onsets is not None:
-        cycles = _from_onsets(signal, np.asarray(onsets, dtype=float))
+        cycles = _from_onsets(signal, _instants(onsets))
     elif period is not None:
         cycles = _from_period(signal, to_si(period, "time", "period"))
     else:
@@ -203,11 +225,34 @@ def find_cycles(
     cycles = replace(cycles, remarks=(*signal.remarks, *cycles.remarks))
     if leave_out:
         cycles = cycles.without([int(number) - 1 for number in leave_out])
+    cycles = _without_broken(cycles)
     if not keep_odd and cycles.count >= 4:
-        for index, why in odd_cycles(cycles.folded((np.arange(64) + 0.5) / 64), cycles.periods, cycles.kept):
+        # Cycles of unequal length are alike in time from their onset, not in phase, unless a machine makes them.
+        alike = cycles if cycles.uniform or align == "stretch" else cycles.aligned("onset")
+        for index, why in odd_cycles(alike.folded((np.arange(64) + 0.5) / 64), cycles.periods, cycles.kept):
             if cycles.count > 1:
                 cycles = cycles.without([index], why)
     return _aligned(_drift(cycles, remove_drift), align)
+
+
+def _without_broken(cycles: Cycles) -> Cycles:
+    """Leave out cycles of which too few good samples are there, or in which the logger restarted."""
+    if cycles.gap or cycles.count < 2:
+        return cycles
+    time, _ = cycles._good
+    step = float(np.median(np.diff(cycles.signal.time)))
+    begins, ends = cycles.onsets, cycles.onsets + cycles.periods
+    expected = np.maximum(cycles.periods / step, 1.0)
+    share = (np.searchsorted(time, ends - 1e-9 * ends) - np.searchsorted(time, begins - 1e-9 * begins)) / expected
+    restarts = cycles.signal.time[[first for first, _ in cycles.signal.segments[1:]]]
+    for index, begin, end, there in zip(cycles.kept, begins, ends, share, strict=True):
+        if cycles.count == 1:
+            break
+        if np.any((restarts > begin) & (restarts < end)):
+            cycles = cycles.without([index], "the logger restarted within it")
+        elif there < _LEAST_SAMPLES:
+            cycles = cycles.without([index], f"{100 * (1 - there):.0f} % of its samples are missing or were left out")
+    return cycles
 
 
 def _aligned(cycles: Cycles, align: str | None) -> Cycles:
@@ -254,6 +299,14 @@ def _span(signal: Signal) -> float:
     return float(time[-1] - time[0]) + float(np.median(np.diff(time)))
 
 
+def _instants(onsets: ArrayLike) -> NDArray[np.float64]:
+    """Onsets as numbers [s] or as strings with a unit."""
+    given = np.asarray(onsets)
+    if given.dtype.kind in "US":
+        return np.array([to_si(str(entry), "time", "onsets") for entry in given.ravel()])
+    return np.asarray(given, dtype=float)
+
+
 def _from_onsets(signal: Signal, edges: NDArray[np.float64]) -> Cycles:
     if edges.ndim != 1 or edges.size < 2 or not np.all(np.diff(edges) > 0):
         raise SignalError("onsets must increase, and there must be at least two: the start of a cycle and its end")
@@ -261,7 +314,7 @@ def _from_onsets(signal: Signal, edges: NDArray[np.float64]) -> Cycles:
     inside = (edges >= signal.time[0] - 1e-9 * _span(signal)) & (edges <= end * (1 + 1e-9) + 1e-12)
     if int(inside.sum()) < 2:
         raise SignalError(f"less than one whole cycle lies between {signal.time[0]:.6g} and {end:.6g} s; onsets run from {edges[0]:.6g} s")
-    remarks = (f"Onsets were given: {int(inside.sum()) - 1} whole cycles.",)
+    remarks: tuple[str, ...] = (f"Onsets were given: {int(inside.sum()) - 1} whole cycles.",)
     if not inside.all():
         remarks += (f"{int((~inside).sum())} onsets lie outside the record and were not used.",)
     edges = edges[inside]
@@ -296,12 +349,14 @@ def _from_period(signal: Signal, period: float, said: str = "The period was give
 
 
 def _found(signal: Signal) -> Cycles:
-    """Period from the signal; one for all cycles where they are alike, else each by its own foot."""
+    """Period from the signal; one for all cycles where that describes the record as well as each cycle's own foot."""
     rough = find_period(signal)
-    feet = locate_feet(signal, rough)
-    if constant_period(feet, rough, float(np.median(np.diff(signal.time)))):
-        period = refine_period(signal, rough if feet.size < 3 else float(np.polyfit(np.arange(feet.size), feet, 1)[0]))
-        return _from_period(signal, period, "The period was found in the signal")
+    feet = refine_feet(signal, locate_feet(signal, rough))
+    steady = float(np.median(np.diff(feet))) if feet.size >= 3 else rough
+    if len(signal.segments) == 1:
+        period = refine_period(signal, _line_through(feet, steady) if feet.size >= 3 else rough)
+        if feet.size < 3 or as_well_by_one_period(signal, feet, period):
+            return _from_period(signal, period, "The period was found in the signal")
     if feet.size < 2:
         raise SignalError("fewer than two onsets were found; give period or onsets")
     lengths = np.diff(feet)
@@ -309,7 +364,18 @@ def _found(signal: Signal) -> Cycles:
         f"Cycles were found in the signal: {feet.size - 1} between feet, {lengths.min():.4g} to {lengths.max():.4g} s long "
         f"(median {np.median(lengths):.4g} s); what lies before the first and after the last foot was not used."
     )
-    return Cycles(signal=signal, edges=feet, kept=tuple(range(feet.size - 1)), uniform=False, remarks=(remark,))
+    return Cycles(
+        signal=signal, edges=feet.astype(np.float64), kept=tuple(range(feet.size - 1)), uniform=False, remarks=(remark,)
+    )
+
+
+def _line_through(feet: NDArray[np.float64], period: float) -> float:
+    """Slope of the feet over their number; feet that were missed count, single wild ones do not. [s]"""
+    number = np.round((feet - feet[0]) / period)
+    first = np.polyfit(number, feet, 1)
+    away = np.abs(feet - np.polyval(first, number))
+    near = away <= max(3 * float(np.median(away)), 1e-12)
+    return float(np.polyfit(number[near], feet[near], 1)[0]) if int(near.sum()) >= 3 else float(first[0])
 
 
 def describe_left_out(cycles: Cycles) -> tuple[Any, ...]:

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import warnings
 from collections.abc import Sequence
 
 import numpy as np
@@ -20,7 +21,10 @@ def odd_cycles(folded: NDArray[np.float64], periods: NDArray[np.float64], index:
     A cycle is odd where its difference from the median cycle (rms over the swing's rms), or its length,
     lies more than six robust standard deviations outside, and the difference is large enough to matter.
     """
-    middle = np.nanmedian(folded, axis=0)
+    with warnings.catch_warnings():
+        # No cycle may reach the last phases.
+        warnings.simplefilter("ignore", RuntimeWarning)
+        middle = np.nanmedian(folded, axis=0)
     swing = float(np.nanstd(middle))
     if swing == 0:
         return []

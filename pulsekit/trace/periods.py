@@ -1,8 +1,6 @@
-"""The period of a signal: found by autocorrelation, refined below one sample, and the foot of each wave."""
+"""The period of a signal: found by autocorrelation, refined below one sample."""
 
 from __future__ import annotations
-
-import itertools
 
 import numpy as np
 from numpy.typing import NDArray
@@ -10,12 +8,12 @@ from numpy.typing import NDArray
 from ..errors import SignalError
 from .signal import Signal
 
-__all__ = ["constant_period", "find_period", "locate_feet", "refine_period"]
+__all__ = ["evenly", "find_period", "refine_period"]
 
 _LEAST_CORRELATION = 0.3
 
 
-def _even(signal: Signal) -> tuple[NDArray[np.float64], NDArray[np.float64], float]:
+def evenly(signal: Signal) -> tuple[NDArray[np.float64], NDArray[np.float64], float]:
     """Return time, values and interval on an even grid, for looking only (never for the harmonics)."""
     step = float(np.median(np.diff(signal.time)))
     time = np.arange(signal.time[0], signal.time[-1] + 0.5 * step, step)
@@ -31,7 +29,7 @@ def find_period(signal: Signal) -> float:
     SignalError
         If the signal does not repeat itself within the record.
     """
-    _, values, step = _even(signal)
+    _, values, step = evenly(signal)
     centred = values - values.mean()
     size = centred.size
     spectrum = np.fft.rfft(centred, n=2 * size)
@@ -56,60 +54,6 @@ def find_period(signal: Signal) -> float:
     bend = left - 2 * top + right
     shift = 0.0 if bend == 0 else 0.5 * (left - right) / bend
     return float((lag + shift) * step)
-
-
-def _smoothed(values: NDArray[np.float64], width: int) -> NDArray[np.float64]:
-    if width < 2:
-        return values
-    window = np.hanning(width + 2)[1:-1]
-    return np.convolve(np.pad(values, (width, width), mode="edge"), window / window.sum(), mode="same")[width:-width]
-
-
-def locate_feet(signal: Signal, period: float) -> NDArray[np.float64]:
-    """Return the foot of each wave: where the tangent at the steepest rise meets the least value before it. [s]"""
-    from scipy.signal import find_peaks
-
-    time, values, step = _even(signal)
-    smooth = _smoothed(values, round(0.03 * period / step))
-    slope = np.gradient(smooth, step)
-    tall = float(np.quantile(slope, 0.98))
-    if tall <= 0:
-        return np.empty(0)
-    steepest, _ = find_peaks(slope, height=0.35 * tall, distance=max(int(0.55 * period / step), 1))
-    steepest = _with_weak_ones(steepest, slope, tall, period / step)
-    feet = []
-    for top in steepest:
-        first = max(int(top - 0.35 * period / step), 0)
-        if top - first < 1:
-            continue
-        floor = float(smooth[first : top + 1].min())
-        foot = time[top] - (smooth[top] - floor) / slope[top]
-        if foot >= time[0]:
-            feet.append(float(foot))
-    return np.asarray(feet)
-
-
-def _with_weak_ones(steepest: NDArray[np.intp], slope: NDArray[np.float64], tall: float, samples: float) -> NDArray[np.intp]:
-    """Look once more, with a lower bar, where a cycle seems to be missing between two rises."""
-    found = list(steepest)
-    for left, right in itertools.pairwise(steepest):
-        if right - left > 1.6 * samples:
-            first, last = int(left + 0.6 * samples), int(right - 0.6 * samples)
-            if last > first:
-                top = first + int(slope[first:last].argmax())
-                if slope[top] > 0.12 * tall:
-                    found.append(np.intp(top))
-    return np.sort(np.asarray(found, dtype=np.intp))
-
-
-def constant_period(feet: NDArray[np.float64], period: float, step: float) -> bool:
-    """Tell whether feet lie on a straight line in time, to within a sample or a hundredth of the period."""
-    if feet.size < 3:
-        return True
-    number = np.round((feet - feet[0]) / period)
-    fit = np.polyfit(number, feet, 1)
-    scatter = float(np.std(feet - np.polyval(fit, number)))
-    return bool(scatter < max(0.6 * step, 0.006 * period))
 
 
 def refine_period(signal: Signal, period: float) -> float:
