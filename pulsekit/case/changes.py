@@ -103,10 +103,11 @@ def effects(case: Case, changes: Sequence[Mapping[str, Any]] | None = None, *, w
     return tuple(sorted(rows, key=lambda row: np.inf if row.after is None else row.after))
 
 
-def sized_gas_volume(solved: SolvedLine, *, wanted: float = 0.5) -> float:
-    """Gas volume of a damper at the source that takes the pulsation there to ``wanted`` of what it is [m^3].
+def sized_gas_volume(case: Case, solved: SolvedLine, *, wanted: float = 0.5) -> float:
+    """Gas volume of a damper at the source that takes the largest pulsation to ``wanted`` of what it is [m^3].
 
-    At the strongest order the damper's impedance n p/(i omega V) must be wanted/(1 - wanted) of the line's own.
+    It begins where the damper's impedance at the strongest order is wanted/(1 - wanted) of the line's own, and grows until the
+    line itself, with its shifted resonances, agrees.
     """
     response = solved.response
     order = int(np.abs(response.states[0][0]).argmax())
@@ -115,7 +116,25 @@ def sized_gas_volume(solved: SolvedLine, *, wanted: float = 0.5) -> float:
     pressure = solved.line.mean_pressure
     if pressure is None:
         raise CaseError("sizing a damper needs operation.mean_pressure", key="operation.mean_pressure")
-    return 1.4 * pressure * (1 - wanted) / (omega * impedance * wanted)
+    source = source_kept(solved)
+    goal = wanted * _largest(case, source)[0]
+    volume = 1.4 * pressure * (1 - wanted) / (omega * impedance * wanted)
+    for _ in range(16):
+        if _largest(apply_change(case, _damper(solved, volume)), source)[0] <= goal:
+            break
+        volume *= 1.7
+    return float(volume)
+
+
+def _damper(solved: SolvedLine, volume: float) -> dict[str, Any]:
+    first = next(element for element in solved.line.elements if element.length > 0)
+    return {
+        "name": f"gas damper with {1e3 * volume:.2g} L of gas at the source", "at": 0,
+        "add": {
+            "kind": "gas damper", "gas_volume": f"{volume:.6g} m^3", "pressure": f"{(solved.line.mean_pressure or 0.0) / 1e5:.6g} bar(a)",
+            "neck_length": "30 mm", "neck_radius": f"{1e3 * first.radius:.4g} mm",  # type: ignore[attr-defined]
+        },
+    }  # fmt: skip
 
 
 def quarter_wave_length(solved: SolvedLine, *, order: int | None = None) -> float:
@@ -132,16 +151,7 @@ def usual_changes(case: Case, solved: SolvedLine) -> list[dict[str, Any]]:
     first = next(element for element in solved.line.elements if element.length > 0)
     radius, speed = first.radius, solved.numbers["wave_speed"]  # type: ignore[attr-defined]
     if solved.line.mean_pressure is not None:
-        volume = sized_gas_volume(solved, wanted=wanted)
-        rows.append(
-            {
-                "name": f"gas damper of {1e3 * volume:.3g} L gas at the source", "at": 0,
-                "add": {
-                    "kind": "gas damper", "gas_volume": f"{volume:.6g} m^3", "pressure": f"{solved.line.mean_pressure / 1e5:.6g} bar(a)",
-                    "neck_length": "30 mm", "neck_radius": f"{1e3 * radius:.4g} mm",
-                },
-            }
-        )  # fmt: skip
+        rows.append(_damper(solved, sized_gas_volume(case, solved, wanted=wanted)))
     length = quarter_wave_length(solved)
     if 0.02 < length < 20:
         branch = {"kind": "pipe", "length": f"{length:.5g} m", "radius": f"{1e3 * radius:.5g} mm", "wave_speed": f"{speed:.6g} m/s"}
@@ -151,16 +161,15 @@ def usual_changes(case: Case, solved: SolvedLine) -> list[dict[str, Any]]:
                 "add": {"kind": "side branch", "element": [branch], "end": {"kind": "closed"}},
             }
         )  # fmt: skip
-    flow = abs(solved.response.mean_flow)
+    flow, place = abs(solved.response.mean_flow), solved.line.elements.index(first)
     if flow > 0 and solved.line.mean_pressure is not None:
         drop = 0.03 * solved.line.mean_pressure
         rows.append(
             {
-                "name": f"restrictor of {drop / 1e5:.2g} bar at the source", "at": 0,
+                "name": f"restrictor of {drop / 1e5:.2g} bar behind the first pipe", "at": place + 1,
                 "add": {"kind": "restrictor", "pressure_drop": f"{drop / 1e5:.5g} bar", "flow": f"{6e4 * flow:.6g} L/min"},
             }
         )  # fmt: skip
-    place = solved.line.elements.index(first)
     for factor, word in ((0.8, "20 % shorter"), (1.2, "20 % longer")):
         rows.append({"name": f"first pipe {word}", "set": {f"element.{place}.length": f"{factor * first.length:.6g} m"}})
     return rows

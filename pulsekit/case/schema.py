@@ -273,7 +273,7 @@ def plain_key(dotted: str) -> str:
     ('element.length', 'end.kind')
     """
     words = [word for word in dotted.split(".") if not word.isdigit()]
-    while len(words) > 1 and words[0] == "element" and words[1] in ("element", "end"):
+    while len(words) > 2 and words[0] == "element" and words[1] in ("element", "end"):
         words = words[1:]
     return ".".join(words)
 
