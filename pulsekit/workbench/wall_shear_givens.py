@@ -110,6 +110,8 @@ def _instrument(state: WallShearState) -> list[dict[str, Any]]:
         rows.append(quantity_field(state, "recording.doppler_angle", "Doppler angle", hint="60 deg"))
         rows.append(flag_field(state, "recording.angle_corrected", "Corrected for the angle"))
         rows.append(text_field(state, "recording.sample_volume", "Sample volume", hint="whole lumen"))
+        rows.append(quantity_field(state, "recording.background_velocity", "Background velocity", hint="0 cm/s"))
+        rows.append(quantity_field(state, "recording.velocity_encoding", "Velocity encoding limit", hint="120 cm/s", spread=False))
     if quantity == "velocity_envelope":
         rows.append(quantity_field(state, "recording.spectral_broadening", "Spectral broadening", hint="15 %"))
     rows += [
@@ -124,6 +126,8 @@ def _instrument(state: WallShearState) -> list[dict[str, Any]]:
         text_field(state, "recording.calibration", "Calibration of raw volts", hint="25 bar/V"),
         text_field(state, "recording.zero", "Raw signal at zero", hint="1.002 V"),
         text_field(state, "recording.zero_between", "Zero recorded between", hint="0 s, 3 s"),
+        text_field(state, "recording.deviation", "Column of deviations"),
+        text_field(state, "recording.area", "Column of areas"),
         flag_field(state, "recording.invert", "Forward was recorded negative", unset="no"),
     ]
     for name in _FILE_DETAILS:

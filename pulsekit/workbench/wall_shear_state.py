@@ -102,7 +102,7 @@ class WallShearState(DeskState):
         return done
 
     def changed(self, key: str, value: Any) -> Case:
-        """Radius and diameter exclude each other; another kind of liquid drops the keys that only the old one takes."""
+        """Radius and diameter exclude each other; another kind of liquid drops the givens of the old one."""
         case = super().changed(key, value)
         section, _, name = key.partition(".")
         if value is not None and section == "tube" and name in _SIZES:
@@ -110,8 +110,9 @@ class WallShearState(DeskState):
             for other in set(_SIZES) - keep:
                 case = case.without(f"tube.{other}")
         if key == "fluid.kind":
-            known = {"kind", "id", "extrapolate", *LIQUID_KEYS.get(str(value), ())}
-            for other in set(case.get("fluid") or {}) - known:
+            # A density or viscosity of the old liquid would stay as a measured one of the new: only the temperature is common.
+            keep = {"kind", "id"} | ({"temperature"} & set(LIQUID_KEYS.get(str(value), ())))
+            for other in set(case.get("fluid") or {}) - keep:
                 case = case.without(f"fluid.{other}")
         return case
 
