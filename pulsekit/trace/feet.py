@@ -13,6 +13,7 @@ from .signal import Signal
 __all__ = ["as_well_by_one_period", "locate_feet", "refine_feet"]
 
 _PHASES = 64
+_ALIKE = 0.003  # share of the swing by which cycles may differ whatever the other way of cutting gives
 _WINDOW = (-0.08, 0.35)  # about the foot, in periods: where cycles of any length are alike
 
 
@@ -106,4 +107,4 @@ def as_well_by_one_period(signal: Signal, feet: NDArray[np.float64], period: flo
         folded = np.interp(edges[:-1, None] + phase * float(np.median(np.diff(edges))), time, values)
         return float(np.median(np.sqrt(np.mean((folded - np.median(folded, axis=0)) ** 2, axis=1))))
 
-    return misfit(even) <= 1.1 * misfit(feet)
+    return misfit(even) <= 1.1 * misfit(feet) + _ALIKE * float(np.ptp(values))

@@ -11,6 +11,7 @@ from .signal import Signal
 __all__ = ["evenly", "find_period", "refine_period"]
 
 _LEAST_CORRELATION = 0.3
+_MOST_SAMPLES = 100_000  # above which blocks of samples fix the period finely enough
 
 
 def evenly(signal: Signal) -> tuple[NDArray[np.float64], NDArray[np.float64], float]:
@@ -57,37 +58,73 @@ def find_period(signal: Signal) -> float:
 
 
 def refine_period(signal: Signal, period: float) -> float:
-    """Return the period for which few harmonics leave the least residual, far below one sample. [s]"""
-    from scipy.optimize import minimize_scalar
+    """Return the period for which few harmonics leave the least residual, far below one sample. [s]
 
-    time, values = signal.time - signal.time[0], signal.values
-    weights = np.ones(len(signal)) if signal.weights is None else signal.weights
-    span = float(time[-1])
-    number = max(span / period, 1.0)
-    per_cycle = period / float(np.median(np.diff(time)))
-    count = int(max(1, min(8, (per_cycle - 1) // 2)))
-    if time.size > 20000:
-        thin = time.size // 20000 + 1
-        if per_cycle / thin > 40:
-            time, values, weights = time[::thin], values[::thin], weights[::thin]
+    The start must be right to about a twentieth of a cycle over the record.
+    """
+    good = np.ones(len(signal), dtype=bool) if signal.weights is None else signal.weights > 0
+    time, values = signal.time[good] - signal.time[0], signal.values[good]
+    coarse = _blocks(time, values, int(period / float(np.median(np.diff(signal.time))) / 48))
+    number = max(float(time[-1]) / period, 1.0)
+    count = int(max(1, min(8, (period / float(np.median(np.diff(coarse[0]))) - 1) // 2)))
+    reach = 0.5 / (number * count)
+    grid = period * (1 + np.linspace(-reach, reach, 13))
+    best = float(grid[int(np.argmin([_least_squares(coarse, trial, count)[0] for trial in grid]))])
+    best = _descended(coarse, best, count, float(grid[0]), float(grid[-1]))
+    if coarse[0].size < time.size <= _MOST_SAMPLES:
+        best = _descended((time, values, np.ones(time.size)), best, count, float(grid[0]), float(grid[-1]))
+    return best
 
-    root = np.sqrt(weights)
-    target = (values - np.average(values, weights=weights)) * root
 
-    def residual(trial: float) -> float:
-        turn = np.exp(2j * np.pi * time / trial)
-        columns = [root]
-        wave = root.astype(complex)
-        for _ in range(count):
-            wave = wave * turn
-            columns += [wave.real, wave.imag]
-        basis = np.stack(columns, axis=1)
-        fit = np.linalg.solve(basis.T @ basis, basis.T @ target)
-        return float(np.sum((target - basis @ fit) ** 2))
+_Samples = tuple[NDArray[np.float64], NDArray[np.float64], NDArray[np.float64]]
 
-    reach = 0.35 / (number * count)
-    grid = period * (1 + np.linspace(-reach, reach, 13) * 1.5)
-    best = int(np.argmin([residual(trial) for trial in grid]))
-    low, high = grid[max(best - 1, 0)], grid[min(best + 1, grid.size - 1)]
-    found = minimize_scalar(residual, bounds=(low, high), method="bounded", options={"xatol": 1e-9 * period})
-    return float(found.x)
+
+def _least_squares(
+    samples: _Samples, period: float, count: int
+) -> tuple[float, NDArray[np.float64], NDArray[np.float64], NDArray[np.float64]]:
+    """Residual sum of squares, residual, basis [1, cos, sin, ...] and fitted coefficients at a period."""
+    time, values, sizes = samples
+    turn = np.exp(2j * np.pi * time / period)
+    basis = np.empty((time.size, 2 * count + 1))
+    basis[:, 0] = np.sqrt(sizes)
+    wave = basis[:, 0].astype(complex)
+    for n in range(count):
+        wave = wave * turn
+        basis[:, 2 * n + 1], basis[:, 2 * n + 2] = wave.real, wave.imag
+    target = values * basis[:, 0]
+    fit = np.linalg.solve(basis.T @ basis, basis.T @ target)
+    rest = target - basis @ fit
+    return float(rest @ rest), rest, basis, fit
+
+
+def _descended(samples: _Samples, period: float, count: int, low: float, high: float) -> float:
+    """Gauss's and Newton's steps in the period, the harmonics fitted anew each time."""
+    order = np.arange(1, count + 1)
+    least = _least_squares(samples, period, count)
+    # Below this the sum of squares is rounding and cannot judge a step.
+    rounding = 1e-13 * float(np.sum(samples[2] * samples[1] ** 2))
+    for _ in range(12):
+        _, rest, basis, fit = least
+        # d/dT of a cos(n w t) + b sin(n w t) with w = 2 pi/T.
+        slope = (2 * np.pi * samples[0] / period**2) * (basis[:, 1::2] @ (-order * fit[2::2]) + basis[:, 2::2] @ (order * fit[1::2]))
+        free = slope - basis @ np.linalg.solve(basis.T @ basis, basis.T @ slope)
+        power = float(free @ free)
+        if power == 0:
+            break
+        trial = float(np.clip(period + float(free @ rest) / power, low, high))
+        step = _least_squares(samples, trial, count)
+        if step[0] > least[0] + rounding:
+            break
+        moved, period, least = abs(trial - period), trial, step
+        if moved < 1e-14 * period:
+            break
+    return period
+
+
+def _blocks(time: NDArray[np.float64], values: NDArray[np.float64], size: int) -> _Samples:
+    """Samples averaged in blocks, and how many each holds."""
+    if size < 2:
+        return time, values, np.ones(time.size)
+    starts = np.arange(0, time.size, size)
+    sizes = np.diff(np.append(starts, time.size)).astype(float)
+    return np.add.reduceat(time, starts) / sizes, np.add.reduceat(values, starts) / sizes, sizes
