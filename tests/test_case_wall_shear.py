@@ -80,7 +80,7 @@ def test_an_envelope_is_the_largest_velocity_in_the_section(tmp_path, truth):
 def test_one_differential_transducer(tmp_path, truth):
     write_table(tmp_path / "a.csv", ["time (s)", "drop (Pa)"], TIME, truth.pressure_gradient.evaluate(TIME) * 0.12)
     case = pk.WallShearCase(
-        recording={"file": "a.csv", "signal": "drop", "quantity": "pressure_drop", "distance": "120 mm ± 1 mm"}, cycles={"harmonics": 3}, tube=TUBE,
+        recording={"file": "a.csv", "signal": "drop", "quantity": "pressure_drop", "distance": "120 mm ± 1 mm"}, cycles={"harmonics": 3, "period": "0.8 s"}, tube=TUBE,
         fluid=FLUID, folder=tmp_path,
     )  # fmt: skip
     np.testing.assert_allclose(nominal(case).flow.flow_rate.coefficients, truth.flow_rate.coefficients, rtol=1e-9, atol=1e-15)
@@ -94,7 +94,7 @@ def two_pressures(folder, truth, up_at=0.0):
 
 
 def test_two_pressures_without_a_zero_give_the_oscillation_only(tmp_path, truth):
-    case = pk.WallShearCase(recording=two_pressures(tmp_path, truth), cycles={"harmonics": 3}, tube=TUBE, fluid=FLUID, folder=tmp_path)
+    case = pk.WallShearCase(recording=two_pressures(tmp_path, truth), cycles={"harmonics": 3, "period": "0.8 s"}, tube=TUBE, fluid=FLUID, folder=tmp_path)
     answer = nominal(case)
     np.testing.assert_allclose(answer.flow.flow_rate.coefficients[1:], truth.flow_rate.coefficients[1:], rtol=1e-8)
     for name in ("time_averaged_wall_shear_stress", "oscillatory_shear_index", "mean_flow_rate", "peak_reynolds_number"):
@@ -105,7 +105,7 @@ def test_two_pressures_without_a_zero_give_the_oscillation_only(tmp_path, truth)
 
 def test_a_stated_mean_flow_completes_them(tmp_path, truth):
     recording = two_pressures(tmp_path, truth) | {"mean_flow": "300 mL/min ± 3 %"}
-    case = pk.WallShearCase(recording=recording, cycles={"harmonics": 3}, tube=TUBE, fluid=FLUID, folder=tmp_path)
+    case = pk.WallShearCase(recording=recording, cycles={"harmonics": 3, "period": "0.8 s"}, tube=TUBE, fluid=FLUID, folder=tmp_path)
     np.testing.assert_allclose(nominal(case).flow.flow_rate.coefficients, truth.flow_rate.coefficients, rtol=1e-8)
 
 
@@ -122,7 +122,7 @@ def test_stations_with_their_own_height_zero_and_filter(tmp_path, truth):
             {"name": "up", "file": "p.csv", "column": "p1", "position": "0 mm", "height": "10 mm", "zero": "0 Pa"},
             {"name": "down", "file": "p.csv", "column": "p2", "position": "120 mm", "height": "0 mm", "zero": "40 Pa", "low_pass": "12 Hz"},
         ],
-        cycles={"harmonics": 3}, tube=TUBE, fluid=FLUID, folder=tmp_path,
+        cycles={"harmonics": 3, "period": "0.8 s"}, tube=TUBE, fluid=FLUID, folder=tmp_path,
     )  # fmt: skip
     # 13 000 Pa to twelve digits against a gradient signal of some 100 Pa
     np.testing.assert_allclose(nominal(case).flow.flow_rate.coefficients, truth.flow_rate.coefficients, rtol=1e-7, atol=1e-13)
@@ -163,7 +163,7 @@ def test_zero_calibration_and_sign(tmp_path, truth):
     recording = {
         "file": "v.csv", "signal": "raw", "quantity": "flow_rate", "calibration": "100 mL/min/V", "zero": "1.002 V", "invert": True,
     }  # fmt: skip
-    case = pk.WallShearCase(recording=recording, cycles={"harmonics": 3}, tube=TUBE, fluid=FLUID, folder=tmp_path)
+    case = pk.WallShearCase(recording=recording, cycles={"harmonics": 3, "period": "0.8 s"}, tube=TUBE, fluid=FLUID, folder=tmp_path)
     np.testing.assert_allclose(nominal(case).flow.flow_rate.coefficients, truth.flow_rate.coefficients, rtol=1e-8, atol=1e-15)
 
 
@@ -171,7 +171,7 @@ def test_forward_and_reverse_columns(tmp_path, truth):
     values = truth.mean_velocity.evaluate(TIME) * 100
     write_table(tmp_path / "d.csv", ["time (s)", "fwd (cm/s)", "rev (cm/s)"], TIME, np.maximum(values, 0), np.maximum(-values, 0))
     recording = {"file": "d.csv", "forward": "fwd", "reverse": "rev", "quantity": "mean_velocity"}
-    case = pk.WallShearCase(recording=recording, cycles={"harmonics": 3}, tube=TUBE, fluid=FLUID, folder=tmp_path)
+    case = pk.WallShearCase(recording=recording, cycles={"harmonics": 3, "period": "0.8 s"}, tube=TUBE, fluid=FLUID, folder=tmp_path)
     np.testing.assert_allclose(nominal(case).flow.flow_rate.coefficients, truth.flow_rate.coefficients, rtol=1e-8, atol=1e-15)
 
 
