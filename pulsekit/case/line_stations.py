@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 from dataclasses import dataclass
+from functools import cached_property
 from typing import Any
 
 import numpy as np
@@ -14,8 +15,8 @@ from ..errors import CaseError, InputError
 from ..quantities import Given
 from ..trace import Cycles, Harmonics, Recording, Signal, decompose, find_cycles
 from ..trace.channel import butterworth_response, delay_response, high_pass_response, second_order_response, usable_orders
-from ..trace.periods import refine_period
-from ..trace.trigger import trigger_onsets
+from ..trace.shaft import shaft_cycles
+from ..trace.spectrum import Unlocked, unlocked_part
 from .case import Case
 from .signals import prepared
 from .workspace import Workspace
@@ -45,22 +46,22 @@ class Station:
         time = self.signal.time
         return np.asarray((time >= self.cycles.edges[0]) & (time <= self.cycles.edges[-1]))
 
+    @cached_property
+    def unlocked(self) -> Unlocked:
+        """Recorded extremes, and what is not locked to the shaft: share of the variance and largest lines."""
+        # As recorded: the undoing of filters changes the harmonics, not how much of the record the mean turn explains.
+        return unlocked_part(self.cycles, decompose(self.cycles, count=self.harmonics.count))
+
     @property
     def extremes(self) -> tuple[float, float, float]:
         """Recorded lowest, highest and peak-to-peak of 99.9 % of the samples [Pa]."""
-        values = self.signal.values[self.inside]
-        low, high = np.quantile(values, (0.0005, 0.9995))
-        return float(values.min()), float(values.max()), float(high - low)
+        part = self.unlocked
+        return part.lowest, part.highest, part.usual_peak_to_peak
 
     @property
     def asynchronous_share(self) -> float:
         """Share of the variance that is not locked to the shaft."""
-        rows, _, phase = self.cycles.samples
-        values = self.signal.values[rows]
-        fitted = self.harmonics.evaluate(phase * self.harmonics.period)
-        # The filters' undoing changes the harmonics; what is asked is how much of the record the mean turn explains.
-        total = float(np.var(values))
-        return float(np.var(values - fitted)) / total if total > 0 else 0.0
+        return self.unlocked.share
 
 
 def _columns(case: Case, section: str, recording: Recording) -> str:
@@ -97,35 +98,22 @@ def turns_of(case: Case, section: str, signal: Signal, recording: Recording, spe
     trigger = case.get(f"{section}.trigger") or case.get("recording.trigger") or case.get("source.trigger") if not isinstance(case.get("source"), list) else None
     leave_out = case.get("cycles.leave_out") or ()
     align = case.get("cycles.align") or "stretch"
+    period = case.value("cycles.period", "time")
+    if trigger is None and period is not None:
+        return find_cycles(signal, period=period, leave_out=leave_out, align=align)
     if trigger is not None:
         place = section if case.get(f"{section}.trigger") else "recording" if case.get("recording.trigger") else "source"
-        pulses = int(case.get(f"{place}.pulses_per_revolution") or 1)
-        ratio = float(case.get(f"{place}.trigger_ratio") or 1.0)
-        edges = trigger_onsets(recording[str(trigger)], pulses_per_cycle=pulses)
-        if ratio != 1.0:
-            whole = np.arange(0, edges.size - 1e-9, ratio)
-            edges = np.interp(whole, np.arange(edges.size), edges)
-        found = float(1 / np.mean(np.diff(edges)))
-        if speed is not None and abs(found / speed - 1) > 0.03 and case.get("operation.speed_range") is None:
-            raise _speeds_differ(found, speed, "the trigger")
-        return find_cycles(signal, onsets=edges, leave_out=leave_out, align=align)
-    period = case.value("cycles.period", "time")
-    if period is None:
+        found = shaft_cycles(
+            signal, trigger=recording[str(trigger)], speed=speed if case.get("operation.speed_range") is None else None,
+            pulses_per_revolution=int(case.get(f"{place}.pulses_per_revolution") or 1), trigger_ratio=float(case.get(f"{place}.trigger_ratio") or 1.0),
+            trigger_angle=case.value(f"{place}.trigger_angle") or 0.0, leave_out=leave_out,
+        )  # fmt: skip
+    else:
         if speed is None:
             raise case.missing("operation.speed")
         _resolved(signal, speed * number)
-        period = number * refine_period(signal, 1 / (speed * number))
-        if abs(period * speed - 1) > 0.03:
-            raise _speeds_differ(1 / period, speed, "the trace")
-    return find_cycles(signal, period=period, leave_out=leave_out, align=align)
-
-
-def _speeds_differ(found: float, stated: float, where: str) -> InputError:
-    return InputError(
-        f"the speed in {where} is {60 * found:.5g} rpm, the stated one {60 * stated:.5g} rpm: they differ by {100 * abs(found / stated - 1):.2g} %; correct "
-        "operation.speed (of the pump's shaft, not the motor's)",
-        name="operation.speed", value=stated,
-    )  # fmt: skip
+        found = shaft_cycles(signal, speed=speed, per_turn=number, leave_out=leave_out)
+    return found if align == "stretch" else found.aligned(align)
 
 
 def _resolved(signal: Signal, frequency: float) -> None:
@@ -245,7 +233,7 @@ def recording_checks(stations: Sequence[Station], mean_pressure: Given | None, a
         rows.append(
             Check(
                 name=f"periodic_{station.name}", label=f"Locked to the shaft: station {station.name}", verdict=verdict, value=scatter, limit=0.1,
-                because=f"{100 * scatter:.2g} % of the variance at station {station.name} is not locked to the shaft and is not in the mean turn.", source="our allowance",
+                because=f"Station {station.name}: {' '.join(station.unlocked.remarks)}", source="our allowance",
             )
         )  # fmt: skip
         if station.mean_known and mean_pressure is not None:

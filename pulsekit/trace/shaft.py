@@ -100,8 +100,10 @@ def shaft_cycles(
 
     Raises
     ------
-    SignalError
+    InputError
         If the trigger or the trace shows a speed more than 3 % from the stated one; both are named.
+    SignalError
+        If neither trigger nor speed is there, or no pulsation stands out.
     """
     if trigger is not None:
         turns = turns_of(
@@ -113,7 +115,8 @@ def shaft_cycles(
         end = float(signal.time[-1]) + float(np.median(np.diff(signal.time)))
         inside = turns[(turns >= signal.time[0]) & (turns <= end)]
         said = f"Cycles are turns of the shaft by the trigger {trigger.name!r}: {60 / np.diff(turns).max():.5g} to {60 / np.diff(turns).min():.5g} rpm."
-        return _said(find_cycles(signal, onsets=inside, align="stretch", leave_out=leave_out), said)
+        cut = find_cycles(signal, onsets=inside, align="stretch", leave_out=leave_out)
+        return _said(replace(cut, remarks=tuple(words for words in cut.remarks if not words.startswith("Onsets were given"))), said)
     if speed is None:
         raise SignalError("neither a trigger nor a speed is stated; a pump's orders need one of them (operation.speed, recording.trigger)")
     found = shaft_speed(signal, speed, per_turn=per_turn)
@@ -127,10 +130,11 @@ def _said(cycles: Cycles, words: str) -> Cycles:
 
 def _agree(found: float, stated: float, by: str, remedy: str) -> None:
     if abs(found / stated - 1) > SPEED_TOLERANCE:
-        raise SignalError(
-            f"{by} shows {60 * found:.5g} rpm, {100 * abs(found / stated - 1):.1f} % from the stated {60 * stated:.5g} rpm (allowed: 3 %); "
-            f"check {remedy}"
-        )
+        raise InputError(
+            f"{by} shows {60 * found:.5g} rpm, {100 * abs(found / stated - 1):.2g} % from the stated {60 * stated:.5g} rpm (allowed: 3 %); "
+            f"check {remedy} (operation.speed is that of the pump's shaft, not of the motor)",
+            name="operation.speed", value=stated, allowed="within 3 % of the recording",
+        )  # fmt: skip
 
 
 def shaft_speed(signal: Signal, stated: float, *, per_turn: int = 1) -> float:
@@ -142,7 +146,9 @@ def shaft_speed(signal: Signal, stated: float, *, per_turn: int = 1) -> float:
     Raises
     ------
     SignalError
-        If nothing stands out there, or the speed found differs by more than 3 %.
+        If nothing stands out there.
+    InputError
+        If the speed found differs by more than 3 %.
 
     Examples
     --------

@@ -112,7 +112,8 @@ def unlocked_part(cycles: Cycles, harmonics: Harmonics, *, lines: int = 3) -> Un
     low, high = (float(v) for v in np.percentile(values, [tail, 100 - tail]))
     variance = float(np.var(values))
     share = float(np.mean(rest**2) / variance) if variance else 0.0
-    found = _lines(time, rest, harmonics.frequency, lines)
+    drift = 0.5 * float(np.ptp(cycles.periods)) / cycles.period
+    found = _lines(time, rest, harmonics.frequency, lines, drift)
     part = Unlocked(
         lowest=float(values.min()), highest=float(values.max()), low=low, high=high, mean_cycle_low=float(mean.min()), mean_cycle_high=float(mean.max()),
         share=min(share, 1.0), rms=float(np.sqrt(np.mean(rest**2))), lines=found, remarks=(),
@@ -120,7 +121,7 @@ def unlocked_part(cycles: Cycles, harmonics: Harmonics, *, lines: int = 3) -> Un
     return Unlocked(**{**part.__dict__, "remarks": _words(part)})
 
 
-def _lines(time: NDArray[np.float64], rest: NDArray[np.float64], fundamental: float, most: int) -> tuple[Line, ...]:
+def _lines(time: NDArray[np.float64], rest: NDArray[np.float64], fundamental: float, most: int, drift: float) -> tuple[Line, ...]:
     """Largest peaks of the rest's amplitude spectrum that are no order and exceed its median level fivefold."""
     steps = np.diff(time)
     step = float(np.median(steps)) if steps.size else 0.0
@@ -138,8 +139,9 @@ def _lines(time: NDArray[np.float64], rest: NDArray[np.float64], fundamental: fl
     frequency = np.fft.rfftfreq(size, step)
     width = _NEAR / (grid[-1] - grid[0])
     order = frequency / fundamental
-    # With drifting cycles an order smears over a band that grows with it; within two bins it is an order here.
-    free = (np.abs(order - np.round(order)) * fundamental > width) & (frequency > width) & (frequency < 0.49 / step)
+    # With drifting cycles an order smears over a band that grows with it: nothing within it is called a line of its own.
+    near = np.abs(order - np.round(order)) <= width / fundamental + drift * np.round(order)
+    free = ~near & (frequency > width) & (frequency < 0.49 / step)
     floor = 5.0 * float(np.median(amplitude[1:]))
     out: list[Line] = []
     for _ in range(most):
