@@ -88,13 +88,15 @@ def wide_remarks(inputs: Mapping[str, Input]) -> list[str]:
         if given.relative_uncertainty > 1:
             rows.append(f"{key} = {given.text}: the uncertainty is larger than the value; the log-normal distribution used is very skewed.")
         elif given.shape == "rectangular" and given.relative_uncertainty * np.sqrt(3.0) >= 1:
-            rows.append(f"{key} = {given.text}: the limits reach below zero; a log-normal distribution of the same mean and deviation was used.")
+            rows.append(
+                f"{key} = {given.text}: the limits reach below zero; a log-normal distribution of the same mean and deviation was used."
+            )
     return rows
 
 
 def is_positive(given: Given, key: str) -> bool:
     """Tell whether a given must stay positive: by its dimension, unless it is an offset, a height or a position."""
     last = key.rpartition(".")[2]
-    if last in ("height", "offset_uncertainty", "background_velocity", "delay", "trigger_angle", "mean_flow", "zero"):
+    if last in ("height", "position", "offset_uncertainty", "background_velocity", "delay", "trigger_angle", "mean_flow", "zero"):
         return False
     return given.dimension in _POSITIVE or given.value > 0

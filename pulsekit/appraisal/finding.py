@@ -142,9 +142,7 @@ class Table(Generic[Row]):
     def __getitem__(self, key: str | int | slice) -> Row | tuple[Row, ...]:
         if isinstance(key, str):
             if key not in self._index:
-                raise MissingColumnError(
-                    f"there is no {key!r} here; there are: {', '.join(self.names)}", name=key, columns=self.names
-                )
+                raise MissingColumnError(f"there is no {key!r} here; there are: {', '.join(self.names)}", name=key, columns=self.names)
             return self._rows[self._index[key]]
         return self._rows[key]
 

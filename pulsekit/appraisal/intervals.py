@@ -63,7 +63,8 @@ def one_digit_fixed(samples: NDArray[np.float64]) -> bool:
     spread = float(good.std()) if good.size > 1 else 0.0
     if spread == 0.0:
         return True
-    tolerance = 0.5 * 10.0 ** math.floor(math.log10(spread))
+    # The digit is that of the rounded number: 0.097 is 1 in the first decimal, not 9 in the second.
+    tolerance = 0.5 * 10.0 ** int(f"{spread:.0e}".partition("e")[2])
     return 2 * max(interval_error(samples)) <= tolerance
 
 

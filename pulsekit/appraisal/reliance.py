@@ -57,7 +57,22 @@ _FLOW_FINDINGS = (
 
 #: Line: words in a finding's name -> checks on which it depends; the first that fits.
 WAVE_RELIANCE: tuple[tuple[str, tuple[str, ...]], ...] = (
-    ("", ("source_model", "plane_waves", "linear", "termination", "wall", "friction", "cavitation", "cavitation_recorded", "resolved", "periodic", "speed")),
+    (
+        "",
+        (
+            "source_model",
+            "plane_waves",
+            "linear",
+            "termination",
+            "wall",
+            "friction",
+            "cavitation",
+            "cavitation_recorded",
+            "resolved",
+            "periodic",
+            "speed",
+        ),
+    ),
 )
 
 
@@ -108,7 +123,13 @@ def worst_checks(checks: Checks) -> tuple[list[Check], list[Check], list[Check]]
 
 
 _LINE_MODEL = ("source_model", "friction", "plane_waves", "linear", "wall", "termination", "cavitation")
-_RECORDED = ("recorded_peak_to_peak", "recorded_peak_to_peak_999", "recorded_highest_pressure", "recorded_lowest_pressure", "asynchronous_share")
+_RECORDED = (
+    "recorded_peak_to_peak",
+    "recorded_peak_to_peak_999",
+    "recorded_highest_pressure",
+    "recorded_lowest_pressure",
+    "asynchronous_share",
+)
 _NOT_OF_SOURCE = ("wave_speed", "first_resonance", "first_resonance_damping", "attenuation", "steady_pressure_drop")
 
 

@@ -11,20 +11,22 @@ from numpy.typing import NDArray
 
 from ..appraisal.distributions import Input, draw_inputs, is_positive, stream, wide_remarks
 from ..appraisal.finding import Checks, Finding, Findings
-from ..appraisal.harmonic_draws import draw_harmonics, principal_steps
-from ..appraisal.intervals import SHARES_DEFINITION, interval, one_digit_fixed, shares
-from ..errors import StoppedError
+from ..appraisal.harmonic_draws import draw_harmonics
+from ..appraisal.intervals import SHARES_DEFINITION, interval, interval_error, shares
+from ..errors import InputError, StoppedError
 from ..fluids import sample_fluid
 from ..tube.ensemble import Ensemble, propagate, velocity_indices
 from ..tube.findings import peak_velocity
 from ..tube.sections import radius_of
 from .answer import Band, LeftOut
 from .case import Case
+from .interval_words import first_order, first_order_words, improve, interval_words, left_out
 from .measurement import Measurement
 
 __all__ = ["PropagatedTube", "propagate_tube", "uncertain_inputs"]
 
 SAMPLES, SEED = 10_000, 20260
+_LEAST = 40  # samples below which 2.5 % is less than one of them
 _PART = 2500  # samples at a time: the curves of a part stay small
 _RECTIFIED = (
     "time_averaged_wall_shear_stress", "peak_wall_shear_stress", "oscillatory_shear_index", "minimum_wall_shear_stress", "greatest_wall_shear_stress",
@@ -33,8 +35,14 @@ _RECTIFIED = (
     "peak_velocity", "pressure_gradient_amplitude", "peak_reynolds_number", "quasi_steady_shear_rate_of_mean_velocity",
     "quasi_steady_shear_rate_of_centreline_velocity",
 )  # fmt: skip
-_NOT_NEGATIVE = ("oscillatory_shear_index", "backward_wall_shear_stress", "forward_wall_shear_stress", "backward_flow_rate", "forward_flow_rate", "backward_fraction")
-_LEAD = ("time_averaged_wall_shear_stress", "peak_wall_shear_stress", "oscillatory_shear_index")
+_NOT_NEGATIVE = (
+    "oscillatory_shear_index",
+    "backward_wall_shear_stress",
+    "forward_wall_shear_stress",
+    "backward_flow_rate",
+    "forward_flow_rate",
+    "backward_fraction",
+)
 
 
 @dataclass(frozen=True, eq=False, kw_only=True)
@@ -139,8 +147,7 @@ def propagate_tube(
     stop: Any = None, identities: Mapping[str, str] | None = None,
 ) -> PropagatedTube:  # fmt: skip
     """Return the findings of a case with intervals, shares and bands."""
-    stated = samples if samples is not None else case.get("uncertainty.samples")
-    count = int(stated or SAMPLES)
+    count = _stated_samples(case, samples)
     seed = int(case.get("uncertainty.seed", SEED))
     inputs = uncertain_inputs(case, measurement, flow)
     if identities:
@@ -159,17 +166,35 @@ def propagate_tube(
     shifts = _bias(model, nominal, measurement, nominal_run, instants, seed)
     table = _columns(values, uncertain, raw)
     parts = shares(cloud, table)
-    rows = [_with_interval(finding, cloud, shifts, parts, bool(table)) for finding in findings]
-    remarks = [*wide_remarks(inputs), *_words(rows, cloud, shifts, count, seed, stated)]
-    remarks += _first_order(model, nominal, uncertain, measurement, nominal_run, cloud, instants)
-    out = Findings(rows)
+    rows = Findings(_with_interval(finding, cloud, shifts, parts, bool(table)) for finding in findings)
+    first = first_order(model, nominal, uncertain, measurement, instants)
+    remarks = [
+        *wide_remarks(inputs), *interval_words(rows, cloud, shifts, count=count, seed=seed, part=_PART, uncertain=bool(table)),
+        *first_order_words(rows, first, cloud),
+    ]  # fmt: skip
     time = np.arange(instants) * flow.mean_velocity.period / instants
-    known = flow.mean_known
     return PropagatedTube(
-        findings=out, checks=checks, bands={name: Band(time, *ends) for name, ends in bands.items()} if known and table else {},
-        remarks=tuple(remarks), shares_definition=SHARES_DEFINITION, left_out=_left_out(model, inputs, nominal, nominal_run, measurement, instants),
-        improve=_improve(out), samples=cloud, extras={"samples": count, "seed": seed, "inputs": uncertain, "columns": table, "identity": identity},
+        findings=rows, checks=checks, bands={name: Band(time, *ends) for name, ends in bands.items()} if flow.mean_known and table else {},
+        remarks=tuple(remarks), shares_definition=SHARES_DEFINITION, left_out=left_out(model, inputs, nominal, nominal_run, measurement, rows, instants),
+        improve=improve(rows), samples=cloud,
+        extras={
+            "samples": count, "seed": seed, "inputs": uncertain, "columns": table, "identity": identity, "first_order": first,
+            "interval_error": {row.name: interval_error(cloud[row.name]) for row in rows if row.low is not None and row.name in cloud},
+        },
     )  # fmt: skip
+
+
+def _stated_samples(case: Case, samples: int | None) -> int:
+    """Number of samples asked for; refused where it cannot give an interval."""
+    stated = samples if samples is not None else case.get("uncertainty.samples")
+    if stated is None:
+        return SAMPLES
+    if stated != int(stated) or stated < _LEAST:
+        raise InputError(
+            f"uncertainty.samples = {stated} must be a whole number of at least {_LEAST}; {SAMPLES} are usual", name="uncertainty.samples", value=stated,
+            allowed=f">= {_LEAST}",
+        )  # fmt: skip
+    return int(stated)
 
 
 def _nominal(model: _Model, nominal: Mapping[str, float], measurement: Measurement, instants: int) -> dict[str, float]:
@@ -205,7 +230,11 @@ def _bias(
 
 
 def _with_interval(
-    finding: Finding, cloud: Mapping[str, NDArray[np.float64]], shifts: Mapping[str, float], parts: Mapping[str, Mapping[str, float]], any_input: bool
+    finding: Finding,
+    cloud: Mapping[str, NDArray[np.float64]],
+    shifts: Mapping[str, float],
+    parts: Mapping[str, Mapping[str, float]],
+    any_input: bool,
 ) -> Finding:
     if finding.value is None or finding.name not in cloud or not any_input:
         return finding
@@ -220,109 +249,3 @@ def _with_interval(
         low = None if low is None else max(low, 0.0)
         high = None if high is None else max(high, 0.0)
     return finding.replace(low=low, high=high, shares=parts.get(finding.name, {}))
-
-
-def _words(
-    rows: list[Finding], cloud: Mapping[str, NDArray[np.float64]], shifts: Mapping[str, float], count: int, seed: int, stated: Any
-) -> list[str]:
-    remarks = [
-        f"Intervals: central 95 % of {count} Monte Carlo samples, seed {seed}; positive givens are log-normal with the stated mean and standard deviation, "
-        "limits are rectangular, the harmonics a multivariate t; bands from the first "
-        f"{min(count, _PART)} samples. The samples' extremes and rectified means differ from the exact ones by less than 1e-4 of the swing."
-    ]
-    loose = [name for name in _LEAD if name in cloud and not one_digit_fixed(cloud[name])]
-    if loose:
-        remarks.append(
-            f"{count} samples do not fix the ends to one significant digit (JCGM 101, 7.9.2) for {', '.join(loose)}; ask for more "
-            "(uncertainty.samples)."
-        )
-    for finding in rows:
-        shift = shifts.get(finding.name)
-        if shift and finding.name in _LEAD and finding.low is not None and finding.high is not None:
-            width = finding.high - finding.low
-            if width > 0 and abs(2 * shift) > 0.05 * width:
-                remarks.append(
-                    f"Noise lifts {finding.label.split(',')[0].lower()} by about {shift:.3g} {finding.unit}; the interval was moved by twice that (the samples carry "
-                    "the noise once more), the value stands as computed."
-                )
-        if finding.value is not None and finding.low is not None and finding.high is not None:
-            slack = 1e-9 * max(abs(finding.value), abs(finding.high - finding.low))
-            if not finding.low - slack <= finding.value <= finding.high + slack:
-                remarks.append(f"{finding.label}: the value lies outside its interval, because noise in the harmonics lifts it.")
-    return remarks
-
-
-def _first_order(
-    model: _Model, nominal: Mapping[str, float], uncertain: Mapping[str, Input], measurement: Measurement, at: Mapping[str, float],
-    cloud: Mapping[str, NDArray[np.float64]], instants: int,
-) -> list[str]:  # fmt: skip
-    """First-order (GUM) estimate by central differences beside the Monte Carlo one; a remark where they differ by over 20 %."""
-    steps = principal_steps(measurement.raw)
-    keys = list(uncertain)
-    samples = 2 * (len(keys) + steps.shape[0])
-    if samples == 0:
-        return []
-    values = {key: np.full(samples, value) for key, value in nominal.items()}
-    raw = np.tile(np.asarray(measurement.raw.coefficients), (samples, 1))
-    for place, key in enumerate(keys):
-        spread = uncertain[key].given.standard_uncertainty
-        # For a spread near the value the lower step would leave the positive side; the slope is taken closer in.
-        step = min(spread, 0.1 * abs(nominal[key])) if uncertain[key].positive else spread
-        values[key][2 * place] += step
-        values[key][2 * place + 1] -= step
-    for place, step_ in enumerate(steps):
-        raw[2 * (len(keys) + place)] += step_
-        raw[2 * (len(keys) + place) + 1] -= step_
-    found = model(values, raw, bands=False, instants=instants).findings
-    apart = []
-    for name in _LEAD:
-        halves = 0.5 * (found[name][0::2] - found[name][1::2])
-        for place, key in enumerate(keys):
-            spread = uncertain[key].given.standard_uncertainty
-            used = min(spread, 0.1 * abs(nominal[key])) if uncertain[key].positive else spread
-            halves[place] *= spread / used if used else 1.0
-        first = float(np.sqrt(np.sum(halves**2)))
-        good = cloud[name][np.isfinite(cloud[name])]
-        full = float(0.5 * (np.quantile(good, 0.8413) - np.quantile(good, 0.1587))) if good.size else 0.0
-        if full > 0 and abs(first / full - 1) > 0.2:
-            apart.append(f"{name.replace('_', ' ')} (first order {first:.3g}, Monte Carlo {full:.3g}, SI)")
-    if apart:
-        return ["A first-order (GUM) standard uncertainty differs from the Monte Carlo one by more than 20 % for " + "; ".join(apart) + "."]
-    return ["A first-order (GUM) estimate agrees with the Monte Carlo one within 20 % for the leading findings."]
-
-
-def _left_out(
-    model: _Model, inputs: Mapping[str, Input], nominal: Mapping[str, float], at: Mapping[str, float], measurement: Measurement, instants: int
-) -> tuple[LeftOut, ...]:
-    """Givens without a stated uncertainty, and what 5 % on each would add to the time-averaged wall shear."""
-    rows = []
-    # A change of 5 % of a temperature in kelvin means nothing: 1 K is used for it.
-    open_keys = [key for key, entry in inputs.items() if not entry.given.stated and entry.given.value != 0 and entry.given.text != "tube"]
-    if not open_keys:
-        return ()
-    values = {key: np.full(len(open_keys), value) for key, value in nominal.items()}
-    for place, key in enumerate(open_keys):
-        values[key][place] += 1.0 if inputs[key].given.dimension == "temperature" else 0.05 * nominal[key]
-    raw = np.tile(np.asarray(measurement.raw.coefficients), (len(open_keys), 1))
-    found = model(values, raw, bands=False, instants=instants).findings["time_averaged_wall_shear_stress"]
-    for place, key in enumerate(open_keys):
-        change = abs(float(found[place]) / at["time_averaged_wall_shear_stress"] - 1) if at["time_averaged_wall_shear_stress"] else 0.0
-        size = "1 °C" if inputs[key].given.dimension == "temperature" else "5 %"
-        rows.append(LeftOut(key, f"{key} ({size} more would change the time-averaged wall shear by {100 * change:.1f} %)"))
-    return tuple(rows)
-
-
-def _improve(findings: Findings) -> str:
-    """Which input to measure better first, and what the interval would become."""
-    lead = findings.get("time_averaged_wall_shear_stress")
-    if lead is None or not lead.shares or lead.low is None or lead.high is None:
-        return ""
-    owned = {key: share for key, share in lead.shares.items() if key != "interactions"}
-    if not owned:
-        return ""
-    key, share = max(owned.items(), key=lambda item: item[1])
-    what = "record more cycles" if key == "recording" else f"measure {key} better"
-    return (
-        f"To narrow the interval of the time-averaged wall shear stress, {what} first: it owes {100 * share:.0f} % of the variance to it, and were it exact the "
-        f"interval would be about {100 * np.sqrt(max(1 - share, 0.0)):.0f} % as wide."
-    )
