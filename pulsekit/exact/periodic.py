@@ -105,7 +105,7 @@ def _polished(
 ) -> tuple[NDArray[np.float64], NDArray[np.float64]]:
     """Newton's method on the derivative from the best grid point and from its nearest rivals; never worse than the grid."""
     step = 2 * np.pi / size
-    best_phase = start * step
+    best_phase: NDArray[np.float64] = np.asarray(start * step, dtype=np.float64)
     best = np.take_along_axis(grid, start[:, None], axis=1)[:, 0]
     # A rival peak may be higher between its grid points: all local extremes within the grid's own error are polished.
     score = sign * grid
@@ -115,14 +115,14 @@ def _polished(
     row, column = np.nonzero(close)
     if row.size == 0:
         return best, best_phase
-    phase = column * step
+    phase: NDArray[np.float64] = np.asarray(column * step, dtype=np.float64)
     rival, order = rows[row], np.arange(rows.shape[1])
     for _ in range(6):
         # Both derivatives from one exponential: i n and (i n)^2 times the same terms.
         terms = rival * np.exp(1j * phase[:, None] * order)
         slope, curve = -(terms.imag @ order), -(terms.real @ order**2)
         move = np.clip(np.divide(-slope, curve, out=np.zeros_like(slope), where=sign * curve < 0), -step, step)
-        phase = phase + move
+        phase = np.asarray(phase + move, dtype=np.float64)
         if np.all(np.abs(move) < 1e-9):  # the error after this step is of the order of its square
             break
     value = _at(rival, phase)

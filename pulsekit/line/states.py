@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping, Sequence
+from collections.abc import Iterable, Mapping, Sequence
 from typing import Any
 
 import numpy as np
@@ -58,7 +58,7 @@ def place_of(line: Line, position: float) -> tuple[int, float]:
 
 
 def along(
-    line: Line, omega: Any, medium: Medium, values: Mapping[str, Any], loads: Sequence[Load], states: Sequence[State], positions: Sequence[float]
+    line: Line, omega: Any, medium: Medium, values: Mapping[str, Any], loads: Sequence[Load], states: Sequence[State], positions: Iterable[float]
 ) -> tuple[NDArray[np.complex128], NDArray[np.complex128]]:
     """Pressure and flow at positions, the position axis first."""
     pressures, flows = [], []

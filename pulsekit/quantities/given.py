@@ -41,6 +41,7 @@ class Given:
 
 
 def finite(given: Given, name: str) -> Given:
+    """Return the given, or raise InputError if it is not finite or its uncertainty is negative."""
     if not math.isfinite(given.value) or not math.isfinite(given.standard_uncertainty):
         raise InputError(f"{name} = {given.text!r} is not finite; give a number", name=name, value=given.text)
     if given.standard_uncertainty < 0:

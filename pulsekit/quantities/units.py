@@ -162,6 +162,7 @@ def from_si(value: Any, unit: str, dimension: str | None = None) -> Any:
 
 
 def in_si(number: Fraction, read: str, dimension: str, *, difference: bool = False) -> float:
+    """Return a number of a unit (registry spelling) in SI, rounded once."""
     factor, offset, _, turns = _scale(read)
     exact = float(number * factor + (0 if difference or dimension == "temperature_difference" else offset))
     return exact / (2.0 * math.pi) if dimension == "frequency" and turns else exact

@@ -150,7 +150,7 @@ def calibrated(signal: Signal, calibration: str | None = None, zero: str | float
 def _zero_value(zero: str | float, signal: Signal) -> float:
     if not isinstance(zero, str):
         return float(zero)
-    quantity = registry().Quantity(zero)
+    quantity: Any = registry().Quantity(zero)
     try:
         if signal.dimension is None:
             return float(quantity.magnitude)

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 from functools import cached_property
+from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
@@ -32,8 +33,8 @@ class Clock:
     @cached_property
     def instants(self) -> NDArray[np.float64]:
         """All instants, shape (count,). [s]"""
-        made = self.stamps if self.stamps is not None else self.start + (self.interval or 0.0) * np.arange(self.count)
-        made = np.asarray(made, float)
+        made: Any = self.stamps if self.stamps is not None else self.start + (self.interval or 0.0) * np.arange(self.count)
+        made = np.asarray(made, dtype=np.float64)
         made.flags.writeable = False
         return made
 

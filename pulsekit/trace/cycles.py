@@ -345,7 +345,7 @@ def _from_period(signal: Signal, period: float, said: str = "The period was give
     remarks = [f"{said}: {period:.6g} s, {number} whole cycle{'s' if number != 1 else ''}."]
     if rest > 1e-3 * period:
         remarks.append(f"The last {rest:.4g} s make no whole cycle and were not used.")
-    return Cycles(signal=signal, edges=edges, kept=tuple(range(number)), remarks=tuple(remarks))
+    return Cycles(signal=signal, edges=np.asarray(edges, dtype=np.float64), kept=tuple(range(number)), remarks=tuple(remarks))
 
 
 def _found(signal: Signal) -> Cycles:

@@ -94,7 +94,7 @@ def _least_squares(
     target = values * basis[:, 0]
     fit = np.linalg.solve(basis.T @ basis, basis.T @ target)
     rest = target - basis @ fit
-    return float(rest @ rest), rest, basis, fit
+    return float(rest @ rest), rest, basis, np.asarray(fit, dtype=np.float64)
 
 
 def _descended(samples: _Samples, period: float, count: int, low: float, high: float) -> float:

@@ -189,7 +189,7 @@ def propagate(
     per_velocity["pressure_gradient"] = gradient_factor
     if quantity not in per_velocity:
         raise InputError(f"quantity = {quantity!r} is not one of {', '.join(per_velocity)}", name="quantity", value=quantity)
-    velocity = coefficients / per_velocity[quantity]
+    velocity = coefficients / np.asarray(per_velocity[quantity])
     basis = _basis(count, instants)
     found: dict[str, NDArray[np.float64]] = {}
     spread: dict[str, tuple[NDArray[np.float64], NDArray[np.float64]]] = {}

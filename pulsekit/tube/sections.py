@@ -74,7 +74,7 @@ class CircularTube:
                 f"outer_diameter = {givens['outer_diameter'].text} leaves no bore inside a wall of {givens['wall_thickness'].text}",
                 name="wall_thickness", value=givens["wall_thickness"].value,
             )  # fmt: skip
-        remarks = ()
+        remarks: tuple[str, ...] = ()
         if inner > _SUSPICIOUS_RADIUS:
             remarks = (f"The radius of {inner:.4g} m is suspiciously large for a tube; was another unit meant?",)
         object.__setattr__(self, "radius", inner)

@@ -6,6 +6,7 @@ import hashlib
 import re
 from collections.abc import Sequence
 from dataclasses import dataclass, field
+from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
@@ -228,7 +229,7 @@ def _block(
         arrays[order] = values
     period = stated_period(preamble)
     clock, used = _frame_clock(block, arrays, preamble, period, told, notes)
-    raws = []
+    raws: list[Any] = []
     for order, row in enumerate(block.rows):
         if order in used or _FRAME.match(row.name):
             continue
@@ -291,8 +292,8 @@ def _frame_clock(
             stamps = arrays[order] * factor
             digits = max((len(cell.partition(".")[2] or cell.partition(",")[2]) for cell in row.cells), default=0)
             settled = settle(
-                stamps, resolution=factor * 10.0**-digits, notes=notes, name=row.name, line_of=lambda _row, line=row.line: line
-            )  # type: ignore[misc]
+                stamps, resolution=factor * 10.0**-digits, notes=notes, name=row.name, line_of=lambda _row, line=row.line: line  # type: ignore[misc]
+            )
             if settled.rows is not None:
                 for place in arrays:
                     arrays[place] = arrays[place][settled.rows]

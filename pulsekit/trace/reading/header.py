@@ -36,13 +36,19 @@ def _used_width(layout: Layout) -> int:
     return width
 
 
+def _is_key(cells: Sequence[str]) -> bool:
+    """'Note: by hand, run 3' is a line of the preamble, 'time: s, flow: mL/min' is none."""
+    match = _KEY.match(cells[0]) if cells and ":" in cells[0] else None
+    return match is not None and not read_unit(match["value"]).dimension
+
+
 def _as_header(line: str, layout: Layout) -> list[str] | None:
     """Cells of a line if it can name the columns."""
     least, most = _used_width(layout), layout.width
     # A header may name an empty column at the end, or leave the first (an index) without a name.
     cells = _cells(line, layout.delimiter)
-    if cells and (match := _KEY.match(cells[0])) and ":" in cells[0] and not read_unit(match["value"]).dimension:
-        return None  # 'Note: by hand, run 3' is a line of the preamble
+    if _is_key(cells):
+        return None
     if least <= len(cells) <= most and _texts(cells):
         return cells
     if layout.delimiter in ("", " "):
@@ -111,7 +117,7 @@ def _other_header(lines: Sequence[str], place: int, layout: Layout, notes: Notes
     least = _used_width(layout)
     for mark, shown in ((",", "commas"), (";", "semicolons"), ("\t", "tabs"), ("|", "bars")):
         cells = _cells(line, mark)
-        if mark != layout.delimiter and len(cells) == least > 1 and _texts(cells):
+        if mark != layout.delimiter and len(cells) == least > 1 and _texts(cells) and not _is_key(cells):
             notes.add(f"The header in line {place + 1} is parted by {shown}, the rows are not: both were read so.")
             return cells
     cells = _cells(line, layout.delimiter)
@@ -160,7 +166,7 @@ def _name_columns(layout: Layout, cells: list[str] | None, units: list[str] | No
         if units is not None and below[place]:
             name, unit, remark = header, _inside(below[place]), ""
         else:
-            name, unit, remark = split_header(header) if cells is not None and header else (header, None, "")
+            name, unit, remark = split_header(header) if cells is not None and header else (header, None, "")  # type: ignore[assignment]
         layout.headers.append(header)
         layout.names.append(name or f"column {place + 1}")
         layout.units.append(unit)

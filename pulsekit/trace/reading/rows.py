@@ -209,8 +209,10 @@ class RowReader:
             nonlocal start
             if start is not None:
                 self._deliver({place: np.array(column) for place, column in values.items()}, {p: list(c) for p, c in texts.items()}, start)
-                for column in [*values.values(), *texts.values()]:
-                    column.clear()
+                for numbers in values.values():
+                    numbers.clear()
+                for words in texts.values():
+                    words.clear()
             start = None
 
         for at, raw in enumerate(_lines_of(text), line):

@@ -10,7 +10,7 @@ import zlib
 from collections.abc import Mapping
 from dataclasses import dataclass
 from pathlib import Path, PurePosixPath, PureWindowsPath
-from typing import IO, Any
+from typing import IO, Any, cast
 
 from ...errors import InputError, MissingFileError
 from .told import Notes, Told, clean
@@ -38,7 +38,7 @@ class Source:
         """Open for reading from the start."""
         if self.unpacked is not None:
             self.unpacked.seek(0)
-            return _Kept(self.unpacked)
+            return cast("IO[bytes]", _Kept(self.unpacked))
         if self.data is not None:
             return io.BytesIO(self.data)
         return Path(self.path).open("rb")

@@ -261,8 +261,7 @@ class _Work:
     def _mend_stretch(self, begin: int, end: int, usual: float, slack: float) -> None:
         stamps = self.stamps[begin:end].copy()
         mended: list[int] = []
-        for place in np.flatnonzero(np.diff(stamps) <= 0):
-            place = int(place)
+        for place in np.flatnonzero(np.diff(stamps) <= 0).tolist():
             for first, last in ((place + 1, place + 2), (place, place + 1), (place + 1, place + 3), (place, place + 2)):
                 # stamps[first:last] are doubted; their neighbours tell whether the count fits
                 if first < 1 or last >= len(stamps):

@@ -74,7 +74,7 @@ class TextClock:
         tidy = [text.strip().strip('"') for text in texts]
         tidy = [text if text[:1].isdigit() else "" for text in tidy]
         tidy = [re.sub(r"(?<=\d),(?=\d+\s*\D*$)", ".", text) if "," in text else text for text in tidy]
-        options: dict[str, Any] = {
+        options: Any = {
             "iso": {"format": "ISO8601"},
             "year": {"yearfirst": True, "format": "mixed"},
             "month": {"dayfirst": False, "format": "mixed"},
