@@ -90,7 +90,7 @@ class Messy:
     def _stamp(self, row: int) -> str:
         t = float(self.instants[row - 1 if self.repeated == row else row])
         if self.time == "count":
-            return str(int(round(t / self.interval)) + 1)
+            return str(round(t / self.interval) + 1)
         if self.time in ("clock", "iso", "zone"):
             at = dt.datetime(2024, 2, 28, 23, 59, 59, 500_000) + dt.timedelta(microseconds=round(t * 1e6))
             text = at.strftime("%H:%M:%S.%f") if self.time == "clock" else at.strftime("%Y-%m-%dT%H:%M:%S.%f")
