@@ -11,6 +11,7 @@ from scipy.stats import f as fisher
 __all__ = ["Fit", "as_complex", "as_real", "covariance_of", "noise_of", "significant_count"]
 
 _LEVEL = 0.01  # of the whole family of tests
+_LEVEL_NEXT = 0.2  # of one harmonic that follows on those that stand out: spectra fall off, and a peak cut short costs more than a little noise
 _LEVEL_ONE = 0.05  # with one cycle, where a harmonic left away costs more than one too many
 _FLOOR = 1e-9  # of the largest amplitude: below it a harmonic is rounding of the file, not signal
 _LEAST_FREEDOM = 4  # of a single cycle's residual, below which it does not tell the noise
@@ -70,14 +71,22 @@ def noise_of(fit: Fit, own: NDArray[np.complex128], looked: int) -> tuple[NDArra
 
 
 def significant_count(fit: Fit, noise: NDArray[np.float64], freedom: float, looked: int, cycles: int) -> int:
-    """The highest harmonic that stands out of the noise; at least 1 if there is any."""
+    """The highest harmonic that stands out of the noise, and those next to it that follow on; at least 1 if there is any.
+
+    A harmonic among all must pass at 1 % of the whole family. The next ones in turn are tested one by one at 20 %:
+    a spectrum that falls off has them, and without them peaks come out too low by more than their interval tells.
+    """
     if looked == 0:
         return 0
     power = np.abs(as_complex(fit.vector)[1:]) ** 2
+    real = power > (_FLOOR**2) * power.max(initial=0.0)
     limit = fisher.isf((_LEVEL if cycles > 1 else _LEVEL_ONE) / looked, 2, freedom)
-    stands = (power > limit * noise) & (power > (_FLOOR**2) * power.max(initial=0.0))
-    found = np.flatnonzero(stands)
-    return int(found[-1]) + 1 if found.size else 1
+    found = np.flatnonzero((power > limit * noise) & real)
+    kept = int(found[-1]) + 1 if found.size else 1
+    follows = (power > fisher.isf(_LEVEL_NEXT, 2, freedom) * noise) & real
+    while found.size and kept < looked and follows[kept]:
+        kept += 1
+    return kept
 
 
 def covariance_of(
