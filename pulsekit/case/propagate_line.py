@@ -94,14 +94,19 @@ class PropagatedLine:
     shares_definition: str = SHARES_DEFINITION
 
 
-def propagate_line(case: Any, model: LineModel, *, samples: int | None = None, progress: Any = None, stop: Any = None) -> PropagatedLine:
-    """Return intervals, shares and bands of a line's findings."""
+def propagate_line(
+    case: Any, model: LineModel, *, samples: int | None = None, progress: Any = None, stop: Any = None, identities: Mapping[str, str] | None = None
+) -> PropagatedLine:  # fmt: skip
+    """Return intervals, shares and bands of a line's findings; ``identities`` name streams of random numbers (see `compare`)."""
     count = int(samples if samples is not None else case.get("uncertainty.samples") or SAMPLES)
     seed = int(case.get("uncertainty.seed", SEED))
     inputs = model.inputs
+    if identities:
+        inputs = {key: entry._replace(identity=identities.get(key, entry.identity)) for key, entry in inputs.items()}
     uncertain = {key: entry for key, entry in inputs.items() if entry.given.standard_uncertainty > 0}
     values = {key: np.full(count, entry.given.value) for key, entry in inputs.items()} | draw_inputs(uncertain, count, seed)
     identity = str(model.driven.recording.sha256) if model.driven.recording is not None else "recording"
+    identity = (identities or {}).get("recording", identity)
     raw = draw_harmonics(model.driven.source.harmonics, count, stream(seed, identity))
     parts: list[LineNumbers] = []
     for first in range(0, count, _PART):
@@ -137,7 +142,8 @@ def propagate_line(case: Any, model: LineModel, *, samples: int | None = None, p
             *_bias_words(shifts, cloud),
             *(f"{count} samples do not fix the ends of {name} to one significant digit (JCGM 101, 7.9.2); ask for more (uncertainty.samples)." for name in loose),
         ),
-        left_out=_left_out(model), improve=_improve(parts_of), samples=cloud, extras={"samples": count, "seed": seed},
+        left_out=_left_out(model), improve=_improve(parts_of), samples=cloud,
+        extras={"samples": count, "seed": seed, "inputs": uncertain, "columns": table, "identity": identity},
     )  # fmt: skip
 
 

@@ -200,8 +200,9 @@ def _suction(case: Case, solved: SolvedLine, numbers: dict[str, Any]) -> None:
 
 
 def analyse_pump_line(
-    case: Case, *, samples: int | None = None, progress: Any = None, stop: Any = None, nominal_only: bool = False, workspace: Workspace | None = None
-) -> Answer:
+    case: Case, *, samples: int | None = None, progress: Any = None, stop: Any = None, nominal_only: bool = False, workspace: Workspace | None = None,
+    identities: Mapping[str, str] | None = None,
+) -> Answer:  # fmt: skip
     """Answer a pump-line case (see `analyse`)."""
     workspace = workspace or Workspace()
     solved = solve_line(case, workspace)
@@ -232,7 +233,7 @@ def analyse_pump_line(
         remarks.append(f"Allowed pulsation: {solved.rule.source}.")
     more: dict[str, Any] = {}
     if not nominal_only:
-        spread = propagate_line(case, solved.model, samples=samples, progress=progress, stop=stop)
+        spread = propagate_line(case, solved.model, samples=samples, progress=progress, stop=stop, identities=identities)
         rows = []
         for finding in findings:
             low, high = spread.intervals.get(finding.name, (None, None))
