@@ -31,30 +31,49 @@ def find_period(signal: Signal) -> float:
         If the signal does not repeat itself within the record.
     """
     _, values, step = evenly(signal)
-    centred = values - values.mean()
-    size = centred.size
-    spectrum = np.fft.rfft(centred, n=2 * size)
-    raw = np.fft.irfft(spectrum.real**2 + spectrum.imag**2)[:size]
-    if raw[0] <= 0:
+    if not np.ptp(values) > 0:
         raise SignalError(f"signal {signal.name!r} does not vary; there is no period to find")
-    lags = np.arange(size)
-    correlation = raw / raw[0] * size / (size - lags)
-    usable = correlation[: max(int(size / 1.4), 4)]
-    below = np.flatnonzero(usable < 0.2)
-    if below.size == 0:
-        raise SignalError("no period was found: the signal does not repeat itself; give period or onsets")
-    first = int(below[0])
-    inner = np.arange(max(first, 1), usable.size - 1)
-    peaks = inner[(usable[inner] >= usable[inner - 1]) & (usable[inner] > usable[inner + 1])]
-    if peaks.size == 0 or usable[peaks].max() < _LEAST_CORRELATION:
-        raise SignalError("no period was found: the signal does not repeat itself within the record; give period or onsets")
+    usable, peaks = _correlation_peaks(values - values.mean())
+    # Cycles that vary in length blur a narrow peak: seen through a window of an eighth of the shortest candidate, the wave is broad.
+    width = int(peaks[0] / 8)
+    if width >= 2:
+        window = np.hanning(2 * width + 1)
+        smooth = np.convolve(np.pad(values, width, mode="edge"), window / window.sum(), mode="valid")
+        usable, peaks = _correlation_peaks(smooth - smooth.mean())
     # The first peak nearly as high as the best: a later one is a multiple of the period.
-    best = float(usable[peaks].max())
-    lag = int(peaks[usable[peaks] > 0.85 * best][0])
+    lag = int(peaks[usable[peaks] > 0.85 * float(usable[peaks].max())][0])
     left, top, right = usable[lag - 1], usable[lag], usable[lag + 1]
     bend = left - 2 * top + right
     shift = 0.0 if bend == 0 else 0.5 * (left - right) / bend
     return float((lag + shift) * step)
+
+
+def _correlation_peaks(centred: NDArray[np.float64]) -> tuple[NDArray[np.float64], NDArray[np.intp]]:
+    """Correlation of the record with itself at the lags that it can judge, and its peaks after the first fall.
+
+    At each lag it is divided by the energies of the two parts that meet, so that it never exceeds 1 however short they are.
+    """
+    size = centred.size
+    spectrum = np.fft.rfft(centred, n=2 * size)
+    most = max(int(size / 1.4), 4)
+    raw = np.fft.irfft(spectrum.real**2 + spectrum.imag**2)[:most]
+    energy = np.concatenate([[0.0], np.cumsum(centred**2)])
+    lags = np.arange(most)
+    early, late = energy[size - lags], energy[-1] - energy[lags]
+    floor = 1e-3 * energy[-1]
+    correlation = np.where((early > floor) & (late > floor), raw / np.sqrt(np.maximum(early, floor) * np.maximum(late, floor)), 0.0)
+    below = np.flatnonzero(correlation < 0.2)
+    if below.size == 0:
+        raise SignalError("no period was found: the signal does not repeat itself; give period or onsets")
+    inner = np.arange(max(int(below[0]), 1), most - 1)
+    peaks = inner[(correlation[inner] >= correlation[inner - 1]) & (correlation[inner] > correlation[inner + 1])]
+    peaks = peaks[correlation[peaks] >= _LEAST_CORRELATION]
+    # A lag beyond half the record is judged by less than one cycle's overlap: only where nothing shorter stands out.
+    if np.any(peaks <= size // 2):
+        peaks = peaks[peaks <= size // 2]
+    if peaks.size == 0:
+        raise SignalError("no period was found: the signal does not repeat itself within the record; give period or onsets")
+    return correlation, peaks
 
 
 def refine_period(signal: Signal, period: float) -> float:
