@@ -97,3 +97,20 @@ def test_different_kinds_are_refused(cases):
 
     with pytest.raises(InputError, match="pump line"):
         pk.compare(pk.analyse(cases("a"), nominal_only=True), Other())
+
+
+def test_lines_compare_too():
+    """A changed mean flow: the wave speed is common to both, so the change is known better than either."""
+    case = pk.PumpLineCase(
+        fluid={"kind": "given", "density": "860 kg/m^3", "viscosity": "40 mPa*s", "bulk_modulus": "1.6 GPa"},
+        operation={"speed": "600 rpm", "mean_pressure": "80 bar", "mean_flow": "40 L/min"},
+        source={"kind": "plunger pump", "plungers": 3, "harmonics": 9},
+        element=[{"kind": "pipe", "length": "3 m", "radius": "8 mm", "wave_speed": "1300 m/s ± 3 %"}],
+        end={"kind": "restrictor", "pressure_drop": "60 bar", "flow": "40 L/min"}, uncertainty={"samples": 200},
+    )  # fmt: skip
+    one = pk.analyse(case.with_value("operation.mean_flow", "39 L/min"))
+    found = pk.compare(one, pk.analyse(case))
+    assert "element.0.wave_speed" in found.common
+    name = "largest_peak_to_peak_pressure"
+    assert width(found.findings[f"change_of_{name}"]) < 0.5 * width(one.findings[name])
+    assert found.findings[f"change_of_{name}"].low <= found.findings[f"change_of_{name}"].value <= found.findings[f"change_of_{name}"].high
