@@ -14,7 +14,8 @@ from ..case import Answer, Case, Workspace, analyse, load_case
 from ..case.case import make_case
 from ..case.schema import key_of, sections_of
 from ..errors import CaseError, MissingColumnError, MissingFileError, PulsekitError, RecordingError, SignalError, StoppedError
-from .fields import label_of, value_of
+from .fields import joined, label_of, split, value_of
+from .saving import keep_upload
 
 __all__ = ["DeskState"]
 
@@ -125,7 +126,7 @@ class DeskState:
         self.take(case)
         return self.answer_now()
 
-    def choose_recording(self, path: str | Path) -> bool:
+    def choose_recording(self, path: str | Path, *, progress: Any = None, stop: Any = None) -> bool:
         """Take another recording; a workbench says what it guesses from it."""
         raise NotImplementedError
 
@@ -178,6 +179,35 @@ class DeskState:
             self.serial += 1
             self.full = False
         return self.answer_now()
+
+    def _named(self, path: str | Path) -> str:
+        """Name of a file as the case holds it: relative to its folder where it lies below."""
+        place = (self.case.folder / path).expanduser().resolve()
+        folder = self.case.folder.resolve()
+        return place.relative_to(folder).as_posix() if place.is_relative_to(folder) else str(place)
+
+    def upload(self, name: str, content: bytes, *, progress: Any = None, stop: Any = None) -> bool:
+        """Keep an uploaded recording (or case file) in a folder below the case's and take it."""
+        try:
+            place = keep_upload(self.folder, name, content)
+        except PulsekitError as problem:
+            self.refused["recording.file"] = (name, str(problem))
+            return False
+        if place.suffix.lower() == ".toml":
+            return self.open(place)
+        done = self.choose_recording(place, progress=progress, stop=stop)
+        if not self.notice:
+            self.notice = f"The file was put at {place}"
+        return done
+
+    def slide(self, key: str, number: float, *, gesture: str = "slide") -> bool:
+        """Set the number of a key from its slider; unit and uncertainty stay as typed."""
+        text = self.case.get(key)
+        if text is None:
+            return False
+        value, spread = split(str(text))
+        unit = value.lstrip("+-0123456789.,eE ")
+        return self.set_value(key, joined(f"{number:.5g} {unit}".strip(), spread), gesture=f"{gesture} {key}")
 
     # Answers
 

@@ -13,8 +13,6 @@ from ..case.measurement import measure
 from ..case.units import reader_units
 from ..errors import PulsekitError
 from .desk import DeskState
-from .fields import joined, split
-from .saving import keep_upload
 
 __all__ = ["Glimpse", "WallShearState"]
 
@@ -81,26 +79,6 @@ class WallShearState(DeskState):
         self.take(case)
         return self.answer_now(progress=progress, stop=stop) if answer else True
 
-    def _named(self, path: str | Path) -> str:
-        """Name of a file as the case holds it: relative to its folder where it lies below."""
-        place = (self.case.folder / path).expanduser().resolve()
-        folder = self.case.folder.resolve()
-        return place.relative_to(folder).as_posix() if place.is_relative_to(folder) else str(place)
-
-    def upload(self, name: str, content: bytes, *, progress: Any = None, stop: Any = None) -> bool:
-        """Keep an uploaded recording (or case file) in a folder below the case's and take it."""
-        try:
-            place = keep_upload(self.folder, name, content)
-        except PulsekitError as problem:
-            self.refused["recording.file"] = (name, str(problem))
-            return False
-        if place.suffix.lower() == ".toml":
-            return self.open(place)
-        done = self.choose_recording(place, progress=progress, stop=stop)
-        if not self.notice:
-            self.notice = f"The file was put at {place}"
-        return done
-
     def changed(self, key: str, value: Any) -> Case:
         """Radius and diameter exclude each other; another kind of liquid drops the givens of the old one."""
         case = super().changed(key, value)
@@ -117,17 +95,13 @@ class WallShearState(DeskState):
         return case
 
     def slide(self, key: str, number: float, *, gesture: str = "slide") -> bool:
-        """Set the number of a key from its slider; unit and uncertainty stay as typed. A radius moves a diameter in its place."""
+        """Set the number of a key from its slider. A radius moves a diameter in its place."""
         if key == "tube.radius" and self.case.get("tube.diameter") is not None:
             key, number = "tube.diameter", 2.0 * number
-        text = self.case.get(key)
-        if text is None and key == "fluid.viscosity":
-            text = "1 mPa*s"  # a measured viscosity takes the place of the correlation's
-        if text is None:
-            return False
-        value, spread = split(str(text))
-        unit = value.lstrip("+-0123456789.,eE ")
-        return self.set_value(key, joined(f"{number:.5g} {unit}".strip(), spread), gesture=f"{gesture} {key}")
+        if self.case.get(key) is None and key == "fluid.viscosity":
+            # A measured viscosity takes the place of the correlation's.
+            return self.set_value(key, f"{number:.5g} mPa*s", gesture=f"{gesture} {key}")
+        return super().slide(key, number, gesture=gesture)
 
     def glimpse_of(self, case: Case) -> Any:
         """The recording, its cycles and harmonics, as far as they can be had."""

@@ -65,12 +65,12 @@ painters.spans = (picture, series) => {
       height: picture.foot - picture.top,
     });
     const hint = draw("title");
-    hint.textContent = out ? `Cycle ${k + 1} is not used: ${states[k]}. Click to use it.` : `Cycle ${k + 1}. Click to leave it out.`;
+    hint.textContent = series.options.hints ? series.options.hints[k] : out ? `Cycle ${k + 1} is not used: ${states[k]}. Click to use it.` : `Cycle ${k + 1}. Click to leave it out.`;
     box.append(hint);
     picture.curves.append(box);
     if (to - from > 16) {
       const label = draw("text", { class: "pk-span-number" + (out ? " out" : ""), x: ((from + to) / 2).toFixed(1), y: picture.top + 9 });
-      label.textContent = (out ? "✕ " : "") + (k + 1);
+      label.textContent = series.options.labels ? series.options.labels[k] : (out ? "✕ " : "") + (k + 1);
       picture.curves.append(label);
     }
   }

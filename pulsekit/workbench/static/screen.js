@@ -44,8 +44,8 @@ class Bench {
     }
     grid.style.gridTemplateRows = `repeat(${this.desk.rows.length}, minmax(0, 1fr))`;
     this.cautions = make("footer", { class: "pk-cautions" });
-    const middle = make("main", { class: "pk-middle" }, tools, this.notice, grid);
-    const left = make("aside", { class: "pk-left", "aria-label": "Givens" }, make("h2", {}, this.desk.title), this.givens.root);
+    const middle = make("main", { class: "pk-middle" }, tools, grid);
+    const left = make("aside", { class: "pk-left", "aria-label": "Givens" }, make("h2", {}, this.desk.title), this.notice, this.givens.root);
     this.root = make("div", { class: "pk", "data-lm-suppress-shortcuts": "true", "data-kind": this.desk.kind }, left, middle, this.answer.root, this.cautions);
     this.root.addEventListener("dragover", (event) => { event.preventDefault(); this.root.classList.add("dropping"); });
     this.root.addEventListener("dragleave", (event) => { if (event.target === this.root) this.root.classList.remove("dropping"); });
