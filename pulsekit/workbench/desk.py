@@ -302,6 +302,7 @@ class DeskState:
 def place_of(problem: PulsekitError, kind: str) -> str:
     """Dotted key beside which an error is shown; "" where it belongs to the case as a whole.
 
+    >>> from pulsekit.errors import InputError
     >>> place_of(InputError("radius must be above 0", name="radius"), "wall shear")
     'tube.radius'
     """
