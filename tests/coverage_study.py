@@ -56,7 +56,7 @@ SCENARIOS = (
     # Where the givens are well known the recording alone decides.
     Scenario("recording alone", radius="3.1 mm ± 0.1 %", viscosity="3.5 mPa*s ± 0.3 %"),
     Scenario("recording alone, few cycles", cycles=(5, 6), radius="3.1 mm ± 0.1 %", viscosity="3.5 mPa*s ± 0.3 %"),
-    Scenario("recording alone, noisy", harmonic=0.05, noise=0.3, radius="3.1 mm ± 0.1 %", viscosity="3.5 mPa*s ± 0.3 %"),
+    Scenario("recording alone, noisy", harmonic=0.03, noise=0.2, radius="3.1 mm ± 0.1 %", viscosity="3.5 mPa*s ± 0.3 %"),
 )
 
 

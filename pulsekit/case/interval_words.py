@@ -19,6 +19,7 @@ __all__ = ["LEADS", "first_order", "first_order_words", "improve", "interval_wor
 
 LEADS = ("time_averaged_wall_shear_stress", "peak_wall_shear_stress", "oscillatory_shear_index")
 _APART = 0.2  # relative difference of the two standard uncertainties that is remarked
+_USUAL = 10_000
 _FEW = 2000  # draws below which a remark says that they are few
 
 
@@ -75,25 +76,25 @@ def _fixed_words(rows: Findings, cloud: Mapping[str, NDArray[np.float64]], count
     """The numerical error of the ends, and whether it leaves one significant digit."""
     remarks = []
     lead = lead_of(rows)
-    if lead is not None and lead.name in cloud and lead.low is not None and lead.high is not None and count >= 100:
-        low, high = interval_error(cloud[lead.name])
-        width = lead.high - lead.low
-        if width > 0:
-            remarks.append(
-                f"Numerical error of the interval of the {_short(lead)}: its ends are known to {100 * low / width:.1f} % and {100 * high / width:.1f} % of its "
-                "width (standard error, from order statistics)."
-            )
     loose = [
         _short(row)
         for row in rows
         if row.name in LEADS and row.value is not None and row.name in cloud and not one_digit_fixed(cloud[row.name])
     ]
-    if loose:
+    digit = "not quite one" if loose else "one"
+    if lead is not None and lead.name in cloud and lead.low is not None and lead.high is not None and count >= 100:
+        low, high = interval_error(cloud[lead.name])
+        width = lead.high - lead.low
+        if width > 0:
+            whose = f" for the {', '.join(loose)}" if loose else ""
+            remarks.append(
+                f"Numerical error of the interval of the {_short(lead)}: its ends are known to {100 * low / width:.1f} % and {100 * high / width:.1f} % of its "
+                f"width (standard error, from order statistics); in the sense of JCGM 101, 7.9.2 that is {digit} significant digit{whose}."
+            )
+    if count < _USUAL and (loose or count < _FEW):
         remarks.append(
-            f"{count} samples do not fix the ends to one significant digit (JCGM 101, 7.9.2) for {', '.join(loose)}; ask for more (uncertainty.samples)."
+            f"{count} samples are few: the ends of the intervals change with the seed; {_USUAL} are usual (uncertainty.samples)."
         )
-    elif count < _FEW:
-        remarks.append(f"{count} samples are few: the ends of the intervals change with the seed; 10000 are usual (uncertainty.samples).")
     return remarks
 
 
@@ -195,6 +196,8 @@ def improve(rows: Findings) -> str:
         return ""
     key, share = max(owned.items(), key=lambda item: item[1])
     what = "record more cycles" if key == "recording" else f"measure {key} better"
+    if key == "fluid.correlation":
+        what = "measure the viscosity itself, in place of its correlation (fluid.correlation),"
     return (
         f"To narrow the interval of the {_short(lead)}, {what} first: {100 * share:.0f} % of the variance is owed to it, and were it exact the "
         f"interval would be about {100 * np.sqrt(max(1 - share, 0.0)):.0f} % as wide."

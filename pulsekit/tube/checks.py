@@ -2,8 +2,6 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping
-from dataclasses import dataclass
 from typing import Any
 
 import numpy as np
@@ -11,6 +9,8 @@ import numpy as np
 from ..appraisal.finding import Check, Checks
 from ..exact.periodic import extremes
 from ..exact.similarity import dean_number, entrance_length, reynolds_number, stokes_layer_reynolds_number
+from .check_context import Context, judged
+from .liquid_checks import correlation_check, newtonian_check
 from .recording_checks import recording_checks
 
 __all__ = ["Context", "tube_checks"]
@@ -22,39 +22,10 @@ _STOKES = "bursts from about 500 to 550 (Hino 1976, Eckmann & Grotberg 1991, fro
 _DURST = "F. Durst et al., J. Fluids Eng. 127 (2005) 1154 (from memory)"
 
 
-@dataclass(frozen=True, kw_only=True)
-class Context:
-    """What is known of the case beyond the flow itself; None where nobody said.
-
-    Lengths in metres, wall motion as change of the radius over its mean, ``newtonian`` a function from shear rate
-    [1/s] to apparent viscosity [Pa s] with its name in ``newtonian_source``.
-    """
-
-    tube_length: float | None = None
-    distance_from_inlet: float | None = None
-    bend_radius: float | None = None
-    wall_motion: float | None = None
-    axisymmetric: bool | None = None
-    newtonian: Any = None
-    newtonian_source: str = ""
-    newtonian_by_kind: bool = False
-    cycles: Any = None
-    harmonics: Any = None
-    signal: Any = None
-    quantity: str = ""
-    sample_volume: str | None = None
-    antialias_filter: float | None = None
-    instrument_known: bool = False
-    samples: Mapping[str, Any] | None = None
-    wave_alone: bool = False
-
-
-def _shares_that_fail(context: Context, name: str, limit: float) -> str:
-    """'; fails in 31 % of the samples' where the finding was sampled."""
-    if context.samples is None or name not in context.samples:
-        return ""
-    share = float(np.mean(np.asarray(context.samples[name]) > limit))
-    return f"; above the limit in {100 * share:.0f} % of the samples" if 0 < share < 1 else ""
+def _heard(verdict: str, context: Context, name: str, limit: float) -> tuple[str, str]:
+    found = context.finding(name)
+    heard = judged(verdict, None if found is None else found > limit)
+    return heard.verdict, heard.words
 
 
 def _laminar(flow: Any, context: Context) -> list[Check]:
@@ -72,19 +43,21 @@ def _laminar(flow: Any, context: Context) -> list[Check]:
     rows = []
     if flow.mean_known:
         verdict = "holds" if mean < _LAMINAR_MEAN else "doubtful" if mean < _TURBULENT_MEAN else "fails"
+        verdict, words = _heard(verdict, context, "mean_reynolds_number", _LAMINAR_MEAN)
         rows.append(
             Check(
                 name="laminar_mean", label="Laminar: mean flow", verdict=verdict, value=mean, limit=_LAMINAR_MEAN, source=_AVILA,
                 because=f"The mean Reynolds number is {mean:.0f}; flow stays laminar below {_LAMINAR_MEAN:.0f}"
-                + _shares_that_fail(context, "mean_reynolds_number", _LAMINAR_MEAN) + ("" if verdict == "holds" else f"; {consequence}") + ".",
+                + words + ("" if verdict == "holds" else f"; {consequence}") + ".",
             )
         )  # fmt: skip
         verdict = "holds" if peak < _LAMINAR_MEAN else "doubtful" if peak < 2 * _TURBULENT_MEAN else "fails"
+        verdict, words = _heard(verdict, context, "peak_reynolds_number", _LAMINAR_MEAN)
         rows.append(
             Check(
                 name="laminar_peak", label="Laminar: peak flow", verdict=verdict, value=peak, limit=_LAMINAR_MEAN, source=_AVILA,
                 because=f"The Reynolds number at peak flow is {peak:.0f}; below {_LAMINAR_MEAN:.0f} no instant is in doubt"
-                + _shares_that_fail(context, "peak_reynolds_number", _LAMINAR_MEAN)
+                + words
                 + ("" if verdict == "holds" else "; short peaks above it often stay laminar, the more so the faster they pass") + ".",
             )
         )  # fmt: skip
@@ -94,11 +67,12 @@ def _laminar(flow: Any, context: Context) -> list[Check]:
                 Check(name=name, label=label, verdict="unknown", source=_AVILA, because="The mean flow is not known; give recording.mean_flow.")
             )  # fmt: skip
     verdict = "holds" if layer < _STOKES_DOUBT else "doubtful" if layer < _STOKES_FAIL else "fails"
+    verdict, words = _heard(verdict, context, "stokes_layer_reynolds_number", _STOKES_FAIL)
     rows.append(
         Check(
             name="stokes_layer", label="Laminar: oscillating layer", verdict=verdict, value=layer, limit=_STOKES_FAIL, source=_STOKES,
             because=f"The Reynolds number of the oscillating layer is {layer:.0f}; turbulent bursts appear from about {_STOKES_FAIL:.0f}"
-            + _shares_that_fail(context, "stokes_layer_reynolds_number", _STOKES_FAIL) + ".",
+            + words + ".",
         )
     )  # fmt: skip
     return rows
@@ -124,45 +98,27 @@ def _developed(flow: Any, context: Context) -> list[Check]:
             )  # fmt: skip
             continue
         have = context.distance_from_inlet
+        sampled = context.finding("mean_reynolds_number" if name == "developed" else "peak_reynolds_number")
+        numbers = number if sampled is None else sampled
+        short = np.asarray(context.spread("distance_from_inlet")) < entrance_length(reynolds_number=numbers, diameter=diameter)
         verdict = "holds" if have >= need else "doubtful" if have >= 0.5 * need or name == "developed_peak" else "fails"
+        heard = judged(verdict, short)
         said = "is longer than" if have >= need else "is shorter than"
         rows.append(
             Check(
-                name=name, label=label, verdict=verdict, value=have, limit=need, unit="m", source=_DURST,
-                because=f"The distance from the inlet of {1e3 * have:.4g} mm {said} the entrance length of {1e3 * need:.3g} mm"
+                name=name, label=label, verdict=heard.verdict, value=have, limit=need, unit="m", source=_DURST,
+                because=f"The distance from the inlet of {1e3 * have:.4g} mm {said} the entrance length of {1e3 * need:.3g} mm{heard.words}"
                 + ("." if have >= need else "; the wall shear there is higher than stated, by up to a factor of two close to the inlet."),
             )
         )  # fmt: skip
     return rows
 
 
-def _newtonian(flow: Any, context: Context) -> Check:
-    rate = float(np.mean(np.abs(np.asarray(flow.wall_shear_stress.evaluate(np.arange(128) * flow.mean_velocity.period / 128))))) / flow.fluid.viscosity
-    source = context.newtonian_source or "flow curve of the liquid"
-    if context.newtonian_by_kind:
-        return Check(
-            name="newtonian", label="Newtonian liquid", verdict="holds", value=rate, unit="1/s", source="common practice",
-            because=f"This liquid is Newtonian at the mean wall shear rate of {rate:.3g} 1/s.",
-        )  # fmt: skip
-    if context.newtonian is None:
-        return Check(
-            name="newtonian", label="Newtonian liquid", verdict="unknown", value=rate, unit="1/s", source=source,
-            because=f"The mean wall shear rate is {rate:.3g} 1/s; state the kind of liquid (fluid.kind) to compare its apparent viscosity there.",
-        )  # fmt: skip
-    apparent = float(context.newtonian(max(rate, 1e-3)))
-    apart = apparent / flow.fluid.viscosity - 1
-    verdict = "holds" if abs(apart) < 0.1 else "doubtful" if abs(apart) < 0.3 else "fails"
-    where = "above" if apart > 0 else "below"
-    trend = "higher" if apart > 0 else "lower"
-    return Check(
-        name="newtonian", label="Newtonian liquid", verdict=verdict, value=apart, limit=0.1, source=source,
-        because=f"At the mean wall shear rate of {rate:.3g} 1/s the apparent viscosity is {1e3 * apparent:.3g} mPa·s, {abs(100 * apart):.0f} % {where} the "
-        f"{1e3 * flow.fluid.viscosity:.3g} mPa·s used; with it the wall shear of a given flow would be about {abs(100 * apart):.0f} % {trend}.",
-    )  # fmt: skip
-
-
 def _rigid(flow: Any, context: Context) -> Check:
-    label, source = "Rigid wall, no wave effects", "radius enters the wall shear as its cube at a given flow; wave length against tube length, common practice"
+    label, source = (
+        "Rigid wall, no wave effects",
+        "radius enters the wall shear as its cube at a given flow; wave length against tube length, common practice",
+    )
     if context.wave_alone:
         return Check(
             name="no_reflections", label="No reflected waves", verdict="doubtful", source="common practice",
@@ -170,10 +126,10 @@ def _rigid(flow: Any, context: Context) -> Check:
         )  # fmt: skip
     if context.wall_motion is not None:
         motion = abs(context.wall_motion)
-        verdict = "holds" if motion < 0.03 else "doubtful" if motion < 0.1 else "fails"
+        heard = judged("holds" if motion < 0.03 else "doubtful" if motion < 0.1 else "fails", np.abs(context.spread("wall_motion")) >= 0.03)
         return Check(
-            name="rigid_wall", label=label, verdict=verdict, value=motion, limit=0.03, source=source,
-            because=f"The radius changes by {100 * motion:.2g} % of its mean over the cycle; at a given flow the wall shear changes by about {300 * motion:.2g} % with it.",
+            name="rigid_wall", label=label, verdict=heard.verdict, value=motion, limit=0.03, source=source,
+            because=f"The radius changes by {100 * motion:.2g} % of its mean over the cycle; at a given flow the wall shear changes by about {300 * motion:.2g} % with it{heard.words}.",
         )  # fmt: skip
     if context.tube_length is not None:
         # 5 m/s: a soft artery's pulse wave, the least favourable usual speed.
@@ -194,15 +150,23 @@ def _rigid(flow: Any, context: Context) -> Check:
 def _straight(flow: Any, context: Context) -> Check:
     label, source = "Straight tube", "secondary flow is weak below a Dean number of about 20 (from memory)"
     if context.bend_radius is None:
-        return Check(name="straight", label=label, verdict="unknown", source=source, because="Whether the tube bends is not stated; give tube.bend_radius.")
+        return Check(
+            name="straight",
+            label=label,
+            verdict="unknown",
+            source=source,
+            because="Whether the tube bends is not stated; give tube.bend_radius.",
+        )
     kinematic = flow.fluid.viscosity / flow.fluid.density
     radius = flow.tube.length_scale
     number = reynolds_number(velocity=flow.mean_velocity.mean, diameter=2 * radius, kinematic_viscosity=kinematic)
     dean = float(dean_number(reynolds_number=number, radius=radius, bend_radius=context.bend_radius))
-    verdict = "holds" if dean < 20 else "doubtful" if dean < 100 else "fails"
+    sampled = context.finding("mean_reynolds_number")
+    deans = dean_number(reynolds_number=number if sampled is None else sampled, radius=radius, bend_radius=context.spread("bend_radius"))
+    heard = judged("holds" if dean < 20 else "doubtful" if dean < 100 else "fails", np.asarray(deans) >= 20)
     return Check(
-        name="straight", label=label, verdict=verdict, value=dean, limit=20.0, source=source,
-        because=f"The Dean number of the bend is {dean:.3g}; above about 20 the flow swirls, and the wall shear is higher outside the bend and lower inside.",
+        name="straight", label=label, verdict=heard.verdict, value=dean, limit=20.0, source=source,
+        because=f"The Dean number of the bend is {dean:.3g}{heard.words}; above about 20 the flow swirls, and the wall shear is higher outside the bend and lower inside.",
     )  # fmt: skip
 
 
@@ -219,16 +183,6 @@ def _axisymmetric(context: Context) -> Check:
         name="axisymmetric", label=label, verdict="holds" if context.axisymmetric else "fails", source=source,
         because="The profile was stated to be axisymmetric." if context.axisymmetric
         else "The profile was stated to be skewed: the wall shear here is a mean around the section.",
-    )  # fmt: skip
-
-
-def _correlations(flow: Any) -> Check:
-    beyond = bool(getattr(flow.fluid, "extrapolated", False))
-    return Check(
-        name="correlation_range", label="Givens within the range of the correlations", verdict="fails" if beyond else "holds",
-        because="A property of the liquid was extrapolated beyond the range in which its correlation was measured." if beyond
-        else "All properties of the liquid lie within the range in which they were measured, or were given.",
-        source="; ".join(getattr(flow.fluid, "sources", ()))[:300] or "given",
     )  # fmt: skip
 
 
@@ -282,7 +236,13 @@ def tube_checks(flow: Any, context: Context | None = None, **known: Any) -> Chec
     'holds'
     """
     context = context or Context(**known)
-    rows = [*_laminar(flow, context), *_developed(flow, context), _newtonian(flow, context), _rigid(flow, context), _straight(flow, context)]
+    rows = [
+        *_laminar(flow, context),
+        *_developed(flow, context),
+        newtonian_check(flow, context),
+        _rigid(flow, context),
+        _straight(flow, context),
+    ]
     rows += recording_checks(flow, context)
-    rows += [_axisymmetric(context), _correlations(flow), *_envelope(flow, context)]
+    rows += [_axisymmetric(context), correlation_check(flow), *_envelope(flow, context)]
     return Checks(rows)
