@@ -225,7 +225,11 @@ def _kept_words(
 ) -> str:
     variance = float(np.var(values))
     share = 1.0 if variance == 0 else min(float(np.sum(np.abs(coefficients[1:]) ** 2)) / 2 / variance, 1.0)
-    how = "as asked" if asked is not None else f"up to the highest that stands out of the noise at the {level} % level and those next to it at the 20 % level"
+    how = (
+        "as asked"
+        if asked is not None
+        else f"up to the highest that stands out of the noise at the {level} % level and those next to it at the 20 % level"
+    )
     return f"{kept} harmonics kept of {most} below the Nyquist limit, {how}; they hold {100 * share:.4g} % of the variance of the samples used."
 
 

@@ -11,12 +11,15 @@ from scipy.stats import f as fisher
 __all__ = ["Fit", "as_complex", "as_real", "covariance_of", "noise_of", "significant_count"]
 
 _LEVEL = 0.01  # of the whole family of tests
-_LEVEL_NEXT = 0.2  # of one harmonic that follows on those that stand out: spectra fall off, and a peak cut short costs more than a little noise
+_LEVEL_NEXT = (
+    0.2  # of one harmonic that follows on those that stand out: spectra fall off, and a peak cut short costs more than a little noise
+)
 _LEVEL_ONE = 0.05  # with one cycle, where a harmonic left away costs more than one too many
 _FLOOR = 1e-9  # of the largest amplitude: below it a harmonic is rounding of the file, not signal
 _LEAST_FREEDOM = 4  # of a single cycle's residual, below which it does not tell the noise
 _FEW = 4  # cycles below which the scatter between them is pooled over harmonics
 _SMOOTHED = 6  # cycles below which the noise is averaged over neighbouring harmonics
+_SUCCESSION = 1.28  # standard errors of a correlation of successive cycles above which it is believed (10 %, one-sided)
 _NEIGHBOURS = 7  # harmonics over which it is averaged; half of the freedom gained is counted
 
 
@@ -155,7 +158,7 @@ def _succession(vectors: NDArray[np.float64]) -> float:
         return 1.0
     # The estimate from a short row is biased by about -1/M.
     r = float(np.sum(centred[1:] * centred[:-1])) / total + 1.0 / cycles
-    if r < 1.0 / np.sqrt(cycles):
+    if r < _SUCCESSION / np.sqrt(cycles):
         return 1.0
     r = min(r, 0.8)
     return (1 + r) / (1 - r)

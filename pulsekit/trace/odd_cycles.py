@@ -11,6 +11,7 @@ from numpy.typing import NDArray
 __all__ = ["odd_cycles"]
 
 _FAR = 6.0  # robust standard deviations
+_TYPICAL = 1.6  # times the others' median difference, which noise alone does not reach
 _SHAPE = 0.25  # share of the typical swing that a difference must reach to matter
 _LENGTH = 0.20  # relative difference in length that must be reached to matter
 
@@ -35,7 +36,7 @@ def odd_cycles(folded: NDArray[np.float64], periods: NDArray[np.float64], index:
     for place, number in enumerate(index):
         others = np.delete(apart, place)
         limit = float(np.median(others) + _FAR * 1.4826 * np.median(np.abs(others - np.median(others))))
-        if apart[place] > max(limit, _SHAPE):
+        if apart[place] > max(limit, _SHAPE, _TYPICAL * float(np.median(others))):
             found.append((number, f"does not look like the others (differs by {100 * apart[place]:.0f} % of the swing, rms)"))
             continue
         spread = _FAR * 1.4826 * float(np.median(np.abs(np.delete(length, place))))
