@@ -139,7 +139,9 @@ def test_a_singular_covariance_is_drawn_on_its_line():
 
 
 def test_an_open_side_where_samples_are_infinite():
-    found = propagate(lambda x: 1 / np.round(x), {"x": Given(value=1.0, standard_uncertainty=0.5, stated=True, dimension="ratio")}, samples=1000)
+    found = propagate(
+        lambda x: 1 / np.round(x), {"x": Given(value=1.0, standard_uncertainty=0.5, stated=True, dimension="ratio")}, samples=1000
+    )
     assert found.high["result"] is None
     assert any("no finite value" in sentence for sentence in found.remarks)
 
