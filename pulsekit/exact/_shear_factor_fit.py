@@ -56,6 +56,8 @@ _BELOW = ((2.5, 5), (10.0, 10), (26.0, 16))
 # (smallest alpha, terms of the expansion in 1/zeta): likewise; below 26 exp(-2 Re zeta) is not negligible.
 _ABOVE = ((26.0, 18), (80.0, 10), (1000.0, 5))
 _CHUNK = 8192
+_FEW = 512
+_ARRAYS = {order: (np.array(rows)[:, 0], np.array(rows)[:, 1]) for order, rows in NODES.items()}
 _ROOT_HALF = float(np.sqrt(0.5))
 
 
@@ -90,6 +92,14 @@ def _fractions(square: NDArray[np.float64], order: int) -> NDArray[np.complex128
     np.add(real, 4.0, out=out.real)
     np.multiply(imaginary, square, out=out.imag)
     return out
+
+
+def _fractions_at_once(square: NDArray[np.float64], order: int) -> NDArray[np.complex128]:
+    """The same sum for few numbers, where each call into NumPy costs more than its arithmetic."""
+    nodes, weights = _ARRAYS[order]
+    ts = square[:, None] * nodes
+    term = weights / (1.0 + ts * ts)
+    return np.asarray(4.0 + square * (term * ts).sum(axis=1) + 1j * (square * term.sum(axis=1)))
 
 
 def _far(alpha: NDArray[np.float64], terms: int) -> NDArray[np.complex128]:
@@ -133,7 +143,8 @@ def _put(alpha: NDArray[np.float64], out: NDArray[np.complex128], where: NDArray
     if places.size == 0:
         return
     picked = alpha if places.size == alpha.size else alpha[places]
-    values = _fractions(picked * picked, size) if near else _far(picked, size)
+    few = picked.size <= _FEW
+    values = (_fractions_at_once if few else _fractions)(picked * picked, size) if near else _far(picked, size)
     if places.size == alpha.size:
         out[:] = values
     else:

@@ -63,10 +63,9 @@ def _sampled(rows: NDArray[np.complex128], size: int) -> NDArray[np.float64]:
     return np.asarray(np.fft.irfft(spectrum.conj(), n=size, axis=1))
 
 
-def _at(rows: NDArray[np.complex128], phase: NDArray[np.float64], derivative: int = 0) -> NDArray[np.float64]:
-    """Value or derivative of each row at its own phases; rows (B, N+1), phase (B,)."""
-    order = np.arange(rows.shape[1])
-    terms = rows * (1j * order) ** derivative * np.exp(1j * phase[:, None] * order)
+def _at(rows: NDArray[np.complex128], phase: NDArray[np.float64]) -> NDArray[np.float64]:
+    """Value of each row at its own phase; rows (B, N + 1), phase (B,)."""
+    terms = rows * np.exp(1j * phase[:, None] * np.arange(rows.shape[1]))
     return np.asarray(terms.real.sum(axis=1))
 
 
@@ -93,43 +92,113 @@ def extremes(coefficients: ArrayLike) -> tuple[Any, Any, Any, Any]:
         mean = rows[:, 0].real.reshape(lead)[()]
         nought = np.zeros(lead)[()]
         return mean, mean, nought, nought
+    # The least of x is the greatest of -x: one search for both.
+    both = np.concatenate([rows, -rows])
+    top, phase = _greatest(both)
+    count = rows.shape[0]
+    return (
+        (0.0 - top[count:]).reshape(lead)[()], top[:count].reshape(lead)[()],
+        phase[count:].reshape(lead)[()], phase[:count].reshape(lead)[()],
+    )  # fmt: skip
+
+
+def _slack(rows: NDArray[np.complex128], step: float) -> NDArray[np.float64]:
+    """How far a series may rise above its grid points next to an extreme: step^2/8 max|x''|, the latter bounded by its terms."""
+    return np.asarray(np.abs(rows) @ (np.arange(rows.shape[1]) ** 2 * (step * step / 8)))
+
+
+def _greatest(rows: NDArray[np.complex128]) -> tuple[NDArray[np.float64], NDArray[np.float64]]:
+    """Greatest value of each row and its phase: Newton's method from the best grid point and from all that may rival it."""
     size = _grid_size(rows.shape[1] - 1)
-    grid = _sampled(rows, size)
-    low, low_phase = _polished(rows, grid, grid.argmin(axis=1), size, -1.0)
-    high, high_phase = _polished(rows, grid, grid.argmax(axis=1), size, 1.0)
-    return low.reshape(lead)[()], high.reshape(lead)[()], low_phase.reshape(lead)[()], high_phase.reshape(lead)[()]
-
-
-def _polished(
-    rows: NDArray[np.complex128], grid: NDArray[np.float64], start: NDArray[np.int_], size: int, sign: float
-) -> tuple[NDArray[np.float64], NDArray[np.float64]]:
-    """Newton's method on the derivative from the best grid point and from its nearest rivals; never worse than the grid."""
     step = 2 * np.pi / size
-    best_phase: NDArray[np.float64] = np.asarray(start * step, dtype=np.float64)
-    best = np.take_along_axis(grid, start[:, None], axis=1)[:, 0]
-    # A rival peak may be higher between its grid points: all local extremes within the grid's own error are polished.
-    score = sign * grid
-    peak = (score >= np.roll(score, 1, axis=1)) & (score > np.roll(score, -1, axis=1))
-    bend = np.abs(np.roll(score, 1, axis=1) - 2 * score + np.roll(score, -1, axis=1))
-    close = peak & (score + bend >= (sign * best)[:, None])
-    row, column = np.nonzero(close)
-    if row.size == 0:
-        return best, best_phase
-    phase: NDArray[np.float64] = np.asarray(column * step, dtype=np.float64)
-    rival, order = rows[row], np.arange(rows.shape[1])
+    grid = _sampled(rows, size)
+    start = grid.argmax(axis=1)
+    best, best_phase = grid[np.arange(rows.shape[0]), start], start * step
+    row, column = np.nonzero(grid >= (best - _slack(rows, step))[:, None])
+    left, here, right = grid[row, column - 1], grid[row, column], grid[row, (column + 1) % size]
+    peak = (here >= left) & (here > right)
+    row, column = row[peak], column[peak]
+    if row.size:
+        phase = _stationary(rows[row], np.asarray(column * step, dtype=float), step)
+        value = _at(rows[row], phase)
+        order = np.argsort(value, kind="stable")
+        highest, where = np.full(best.shape, -np.inf), np.zeros(best.shape)
+        highest[row[order]], where[row[order]] = value[order], phase[order]  # of several for one row the last, the highest, stays
+        better = highest > best
+        best, best_phase = np.where(better, highest, best), np.where(better, where, best_phase)
+    return best, np.mod(best_phase, 2 * np.pi)
+
+
+def _stationary(rows: NDArray[np.complex128], phase: NDArray[np.float64], step: float) -> NDArray[np.float64]:
+    """Phase of the greatest value near each phase, by Newton's method on the derivative; rows (B, N + 1), phase (B,)."""
+    order = np.arange(rows.shape[1])
     for _ in range(6):
         # Both derivatives from one exponential: i n and (i n)^2 times the same terms.
-        terms = rival * np.exp(1j * phase[:, None] * order)
+        terms = rows * np.exp(1j * phase[:, None] * order)
         slope, curve = -(terms.imag @ order), -(terms.real @ order**2)
-        move = np.clip(np.divide(-slope, curve, out=np.zeros_like(slope), where=sign * curve < 0), -step, step)
-        phase = np.asarray(phase + move, dtype=np.float64)
+        move = np.clip(np.divide(-slope, curve, out=np.zeros_like(slope), where=curve < 0), -step, step)
+        phase = phase + move
         if np.all(np.abs(move) < 1e-9):  # the error after this step is of the order of its square
             break
-    value = _at(rival, phase)
-    for r, v, p in zip(row, value, phase, strict=True):
-        if sign * v > sign * best[r]:
-            best[r], best_phase[r] = v, p
-    return best, np.mod(best_phase, 2 * np.pi)
+    return phase
+
+
+def _changes(rows: NDArray[np.complex128]) -> tuple[NDArray[np.int_], NDArray[np.float64], NDArray[np.bool_], NDArray[np.bool_]]:
+    """All changes of sign: (row, phase, whether it rises there), and per row whether x is negative at phase 0."""
+    size = 2 * _grid_size(rows.shape[1] - 1)
+    step = 2 * np.pi / size
+    grid = _sampled(rows, size)
+    negative = grid < 0
+    row, column = np.nonzero(negative != np.roll(negative, -1, axis=1))
+    low = np.asarray(column * step, dtype=float)
+    high, rises = low + step, negative[row, column]
+    dips = _dips(rows, grid, step)
+    if dips[0].size:
+        row, low, high, rises = (np.concatenate(pair) for pair in zip((row, low, high, rises), dips, strict=True))
+    return row, _roots(rows[row], low, high, rises), rises, negative[:, 0]
+
+
+def _dips(
+    rows: NDArray[np.complex128], grid: NDArray[np.float64], step: float
+) -> tuple[NDArray[np.int_], NDArray[np.float64], NDArray[np.float64], NDArray[np.bool_]]:
+    """Brackets of the pairs of sign changes that lie between two grid points, where a curve just dips through zero."""
+    size = grid.shape[1]
+    row, column = np.nonzero(np.abs(grid) < _slack(rows, step)[:, None])
+    sign = np.where(grid[row, column] < 0, -1.0, 1.0)
+    left, here, right = (sign * grid[row, (column + shift) % size] for shift in (-1, 0, 1))
+    touching = (here <= left) & (here < right) & (left >= 0) & (right >= 0)
+    row, column, sign = row[touching], column[touching], sign[touching]
+    if row.size:
+        phase = _stationary(-sign[:, None] * rows[row], column * step, step)
+        through = sign * _at(rows[row], phase) < 0
+        row, column, sign, phase = row[through], column[through], sign[through], phase[through]
+    else:
+        phase = np.empty(0)
+    falls = sign > 0
+    return (
+        np.concatenate([row, row]), np.concatenate([(column - 1) * step, phase]),
+        np.concatenate([phase, (column + 1) * step]), np.concatenate([~falls, falls]),
+    )  # fmt: skip
+
+
+def _roots(
+    rows: NDArray[np.complex128], low: NDArray[np.float64], high: NDArray[np.float64], rises: NDArray[np.bool_]
+) -> NDArray[np.float64]:
+    """One root in each bracket, by Newton's method that halves the bracket where it would leave it."""
+    order = np.arange(rows.shape[1])
+    phase = 0.5 * (low + high)
+    for _ in range(60):
+        terms = rows * np.exp(1j * phase[:, None] * order)
+        value, slope = terms.real.sum(axis=1), -(terms.imag @ order)
+        before = (value < 0) == rises
+        low, high = np.where(before, phase, low), np.where(before, high, phase)
+        following = phase - np.divide(value, slope, out=np.full_like(value, np.inf), where=slope != 0)
+        following = np.where((following >= low) & (following <= high), following, 0.5 * (low + high))
+        settled = np.all(np.abs(following - phase) < 2e-15)
+        phase = following
+        if settled:
+            break
+    return phase
 
 
 def zero_phases(coefficients: ArrayLike) -> NDArray[np.float64]:
@@ -150,41 +219,20 @@ def zero_phases(coefficients: ArrayLike) -> NDArray[np.float64]:
     array([1.570796, 4.712389])
     """
     rows, _ = _rows(coefficients)
-    row = rows[0]
-    low, high, low_phase, high_phase = extremes(row)
-    if low >= 0 or high <= 0:
-        return np.empty(0)
-    size = 2 * _grid_size(row.size - 1)
-    # The located extremes join the grid, so that a dip through zero between two grid points is not missed.
-    phase = np.unique(np.concatenate([np.arange(size) * (2 * np.pi / size), [low_phase, high_phase]]))
-    phase = np.append(phase, phase[0] + 2 * np.pi)
-    value = np.asarray(evaluate(row, phase))
-    place = np.flatnonzero((value[:-1] < 0) != (value[1:] < 0))
-    left, right, at_left = phase[place], phase[place + 1], value[place]
-    batch = np.broadcast_to(row, (place.size, row.size))
-    for _ in range(60):
-        middle = 0.5 * (left + right)
-        at_middle = _at(batch, middle)
-        same = (at_middle < 0) == (at_left < 0)
-        left, right = np.where(same, middle, left), np.where(same, right, middle)
-    return np.sort(np.mod(0.5 * (left + right), 2 * np.pi))
+    return np.sort(np.mod(_changes(rows[:1])[1], 2 * np.pi))
 
 
-def _integral(row: NDArray[np.complex128], phase: NDArray[np.float64]) -> NDArray[np.float64]:
-    """Antiderivative of the series at phases."""
-    order = np.arange(1, row.size)
-    terms = (row[1:] / (1j * order)) * np.exp(1j * phase[:, None] * order)
-    return np.asarray(row[0].real * phase + terms.real.sum(axis=1))
-
-
-def _mean_positive_of(row: NDArray[np.complex128]) -> float:
-    zeros = zero_phases(row)
-    if zeros.size == 0:
-        return max(float(row[0].real), 0.0)
-    edges = np.append(zeros, zeros[0] + 2 * np.pi)
-    pieces = np.diff(_integral(row, edges))
-    middle = np.asarray(evaluate(row, 0.5 * (edges[1:] + edges[:-1])))
-    return float(pieces[middle > 0].sum() / (2 * np.pi))
+def _mean_positive_of(rows: NDArray[np.complex128]) -> NDArray[np.float64]:
+    """Integral over the positive pieces: the antiderivative at each fall less that at each rise, and a turn if x(0) >= 0."""
+    row, phase, rises, negative = _changes(rows)
+    mean = rows[:, 0].real
+    total = np.where(negative, 0.0, mean)
+    if row.size:
+        order = np.arange(1, rows.shape[1])
+        terms = (rows[row, 1:] / (1j * order)) * np.exp(1j * phase[:, None] * order)
+        value = mean[row] * phase + terms.real.sum(axis=1)
+        total = total + np.bincount(row, weights=np.where(rises, -value, value), minlength=rows.shape[0]) / (2 * np.pi)
+    return np.maximum(total, 0.0)
 
 
 def mean_positive(coefficients: ArrayLike) -> Any:
@@ -196,7 +244,7 @@ def mean_positive(coefficients: ArrayLike) -> Any:
     1.0
     """
     rows, lead = _rows(coefficients)
-    return np.array([_mean_positive_of(row) for row in rows]).reshape(lead)[()]
+    return _mean_positive_of(rows).reshape(lead)[()]
 
 
 def mean_absolute(coefficients: ArrayLike) -> Any:
@@ -216,10 +264,6 @@ def mean_absolute(coefficients: ArrayLike) -> Any:
     2.0169795283
     """
     rows, lead = _rows(coefficients)
-    out = np.empty(rows.shape[0])
-    for index, row in enumerate(rows):
-        mean = float(row[0].real)
-        positive = _mean_positive_of(row)
-        # Written as a sum of two means of one sign: no cancellation, and never below abs(mean).
-        out[index] = positive + max(positive - mean, 0.0)
-    return out.reshape(lead)[()]
+    positive = _mean_positive_of(rows)
+    # Written as a sum of two means of one sign: no cancellation, and never below abs(mean).
+    return (positive + np.maximum(positive - rows[:, 0].real, 0.0)).reshape(lead)[()]

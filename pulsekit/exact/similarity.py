@@ -7,7 +7,14 @@ from typing import Any
 import numpy as np
 from numpy.typing import ArrayLike
 
-__all__ = ["dean_number", "entrance_length", "reynolds_number", "stokes_layer_reynolds_number", "stokes_layer_thickness", "womersley_number"]
+__all__ = [
+    "dean_number",
+    "entrance_length",
+    "reynolds_number",
+    "stokes_layer_reynolds_number",
+    "stokes_layer_thickness",
+    "womersley_number",
+]
 
 
 def womersley_number(*, radius: ArrayLike, angular_frequency: ArrayLike, kinematic_viscosity: ArrayLike) -> Any:
@@ -36,7 +43,7 @@ def reynolds_number(*, velocity: ArrayLike, diameter: ArrayLike, kinematic_visco
 
     Examples
     --------
-    >>> float(reynolds_number(velocity=-0.1, diameter=0.01, kinematic_viscosity=1e-6))
+    >>> round(float(reynolds_number(velocity=-0.1, diameter=0.01, kinematic_viscosity=1e-6)), 9)
     1000.0
     """
     return (np.abs(np.asarray(velocity, float)) * np.asarray(diameter, float) / np.asarray(kinematic_viscosity, float))[()]

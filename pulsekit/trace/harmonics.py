@@ -156,11 +156,7 @@ class Harmonics:
         factors = np.broadcast_to(np.asarray(factor, dtype=complex), self.coefficients.shape)
         spread = None
         if self.covariance is not None:
-            blocks = np.zeros((2 * factors.size, 2 * factors.size))
-            for n, f in enumerate(factors):
-                blocks[2 * n : 2 * n + 2, 2 * n : 2 * n + 2] = [[f.real, -f.imag], [f.imag, f.real]]
-            jacobian = np.delete(np.delete(blocks, 1, axis=0), 1, axis=1)
-            spread = jacobian @ self.covariance @ jacobian.T
+            spread = _turned(_turned(self.covariance, factors).T, factors).T
         product = self.coefficients * factors
         product[0] = product[0].real
         return self.replace(coefficients=product, covariance=spread, unit=unit)
@@ -181,3 +177,10 @@ class Harmonics:
         return f"<Harmonics: mean {self.mean:.4g}, {self.count} harmonics of {self.frequency:.4g} Hz>"
 
 
+def _turned(rows: NDArray[np.float64], factors: NDArray[np.complex128]) -> NDArray[np.float64]:
+    """Rows [X_0, Re X_1, Im X_1, ...] of a matrix under X_n -> f_n X_n, each pair of rows as one complex row."""
+    out = np.empty_like(rows)
+    out[0] = factors[0].real * rows[0]
+    pairs = (rows[1::2] + 1j * rows[2::2]) * factors[1:, None]
+    out[1::2], out[2::2] = pairs.real, pairs.imag
+    return out

@@ -10,6 +10,7 @@ from numpy.typing import NDArray
 from ..appraisal.finding import Finding, Findings
 from ..exact.periodic import extremes, mean_positive
 from ..exact.similarity import reynolds_number, stokes_layer_thickness
+from .peak import peak_velocity
 
 __all__ = ["TUBE_FINDINGS", "peak_velocity", "tube_findings", "tube_values"]
 
@@ -61,30 +62,6 @@ TUBE_FINDINGS: dict[str, _Row] = {
 }
 
 
-def peak_velocity(flow: Any) -> tuple[float, float, float]:
-    """Largest abs(u) anywhere: (value [m/s], its r/R, its phase [rad]).
-
-    Radii are searched on a grid that is denser at the wall, then by halving around the best one.
-    """
-    x = np.sin(np.linspace(0.0, np.pi / 2, 33))
-    best = (0.0, 0.0, 0.0)
-    width = 1.0 / 16
-    for _ in range(6):
-        shape = flow.tube.profile(flow.alpha, x[:, None]) * flow.mean_velocity.coefficients
-        low, high, low_phase, high_phase = extremes(shape)
-        size = np.maximum(np.abs(low), np.abs(high))
-        top = int(size.argmax())
-        settled = size[top] <= best[0] * (1 + 1e-14)
-        if size[top] >= best[0]:
-            phase = high_phase[top] if abs(high[top]) >= abs(low[top]) else low_phase[top]
-            best = (float(size[top]), float(x[top]), float(phase))
-        if settled:
-            break
-        x = np.clip(np.linspace(best[1] - width, best[1] + width, 9), 0.0, 1.0)
-        width /= 4
-    return best
-
-
 def _ratio(top: float, bottom: float) -> float | None:
     return None if bottom == 0 or not np.isfinite(top / bottom) else float(top / bottom)
 
@@ -95,16 +72,13 @@ def tube_values(flow: Any) -> dict[str, float | None]:
     omega = flow.mean_velocity.angular_frequency
     velocity, shear = flow.mean_velocity.coefficients, flow.wall_shear_stress.coefficients
     gradient, axis = flow.pressure_gradient.coefficients, flow.centreline_velocity.coefficients
-    low_u, high_u, _, _ = (float(v) for v in extremes(velocity))
-    low_s, high_s, low_at, high_at = (float(v) for v in extremes(shear))
-    low_g, high_g, _, _ = (float(v) for v in extremes(gradient))
-    low_a, high_a, _, _ = (float(v) for v in extremes(axis))
+    low, high, at_low, at_high = extremes(np.stack([velocity, shear, gradient, axis]))
+    (low_u, low_s, low_g, low_a), (high_u, high_s, high_g, high_a) = low.tolist(), high.tolist()
+    low_at, high_at = float(at_low[1]), float(at_high[1])
     mean_u, mean_s = float(velocity[0].real), float(shear[0].real)
-    forward_s = float(mean_positive(shear))
-    backward_s = max(forward_s - mean_s, 0.0)
+    forward_u, forward_s = mean_positive(np.stack([velocity, shear])).tolist()
+    backward_u, backward_s = max(forward_u - mean_u, 0.0), max(forward_s - mean_s, 0.0)
     absolute_s = 2 * forward_s - mean_s  # mean abs(x) = 2 mean max(x, 0) - mean x
-    forward_u = float(mean_positive(velocity))
-    backward_u = max(forward_u - mean_u, 0.0)
     peak_s, at = (high_s, high_at) if high_s >= -low_s else (-low_s, low_at)
     scale, viscosity = tube.length_scale, fluid.viscosity
     kinematic = viscosity / fluid.density

@@ -12,6 +12,7 @@ from numpy.typing import ArrayLike
 
 from ..errors import InputError
 from ..exact import womersley
+from ..exact.profile_table import profile_table
 from ..quantities import Given, parse_given
 
 __all__ = ["CircularTube"]
@@ -105,8 +106,11 @@ class CircularTube:
         return womersley.shear_factor(alpha)
 
     def profile(self, alpha: ArrayLike, x: ArrayLike) -> Any:
-        """u(x)/U at x = r/R. [-]"""
-        return womersley.velocity_profile(alpha, x)
+        """u(x)/U at x = r/R; a column of radii against a row of harmonics is one table. [-]"""
+        numbers, places = np.asarray(alpha, dtype=float), np.asarray(x, dtype=float)
+        if numbers.ndim == 1 and places.ndim == 2 and places.shape[1] == 1:
+            return profile_table(numbers, places[:, 0])
+        return womersley.velocity_profile(numbers, places)
 
     def centreline_ratio(self, alpha: ArrayLike) -> Any:
         """u(0)/U. [-]"""
