@@ -65,8 +65,9 @@ def commands() -> None:
 @commands.command()
 @click.argument("recording", type=click.Path(path_type=Path))
 @click.option("--kind", type=click.Choice(["wall-shear", "pump-line"]), help="Which question; by the units of the columns if left out.")
+@click.option("--block", help="Which block, sheet, group or vessel, where the file has several.")
 @click.option("--to", type=click.Path(path_type=Path), help="Name of the case file; beside the recording if left out.")
-def draft(recording: Path, kind: str | None, to: Path | None) -> None:
+def draft(recording: Path, kind: str | None, block: str | None, to: Path | None) -> None:
     """Write a first case file for RECORDING.
 
     What can be found out from the file is filled in. Lines that only you can fill, such as the radius, are marked.
@@ -77,7 +78,7 @@ def draft(recording: Path, kind: str | None, to: Path | None) -> None:
     target = to or recording.with_suffix(".toml")
     if target.exists():
         raise InputError(f"{target} exists already and is left as it is; give another name with --to", name="to", value=str(target))
-    made = draft_case(recording, kind=kind.replace("-", " ") if kind else None)
+    made = draft_case(recording, kind=kind.replace("-", " ") if kind else None, block=block)
     text = made.text
     if to is not None and to.resolve().parent != recording.resolve().parent:
         text = text.replace(f"file = {json.dumps(recording.name, ensure_ascii=False)}", f"file = {json.dumps(str(recording.resolve()))}")

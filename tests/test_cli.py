@@ -196,3 +196,23 @@ def test_study_keeps_going(folder, capsys):
     assert "2 answered, 1 failed" in out
     assert "c.csv" in out
     assert (folder / "all" / "findings.csv").exists()
+
+
+def test_a_draft_asks_for_the_block_and_takes_it(demo, tmp_path, capsys):
+    code, _, err = called(capsys, "draft", demo / "gated" / "cycle.csv", "--to", tmp_path / "a.toml")
+    assert code == 2
+    assert "Artery" in err
+    code, _, err = called(capsys, "draft", demo / "gated" / "cycle.csv", "--block", "Artery", "--to", tmp_path / "a.toml")
+    assert (code, err) == (0, "")
+    case = pk.load_case(tmp_path / "a.toml")
+    assert case.get("recording.block") == "Artery"
+    assert case.get("recording.area") == "Area"
+    assert case.get("recording.deviation") == "Velocity deviation"
+
+
+def test_a_draft_of_two_pressures_along_a_line(demo, tmp_path, capsys):
+    assert called(capsys, "draft", demo / "wash_down" / "ramp.csv", "--to", tmp_path / "a.toml")[0] == 0
+    case = pk.load_case(tmp_path / "a.toml")
+    assert case.kind == "pump line"
+    assert [station["column"] for station in case.get("station")] == ["p1", "p2"]
+    assert case.get("recording.trigger") == "trigger"

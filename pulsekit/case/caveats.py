@@ -2,16 +2,19 @@
 
 from __future__ import annotations
 
+import re
+from collections.abc import Mapping
 from typing import Any
 
 import numpy as np
 
-from ..errors import SignalError
+from ..errors import PulsekitError, SignalError
+from ..quantities import parse_given
 from ..trace import Signal
 from .case import Case
 from .workspace import Workspace
 
-__all__ = ["rectified_words", "refuse_wrapped", "with_radius_of_area"]
+__all__ = ["encoding_of_preamble", "rectified_words", "refuse_wrapped", "with_radius_of_area"]
 
 _SIZES = ("radius", "diameter", "outer_diameter")
 
@@ -33,6 +36,23 @@ def refuse_wrapped(signal: Signal, limit: float) -> None:
             f"{100 * limit:.4g} cm/s: the velocity has wrapped; unwrap it at the source or leave the frame out",
             column=signal.name,
         )  # fmt: skip
+
+
+def encoding_of_preamble(preamble: Mapping[str, str]) -> float | None:
+    """Velocity-encoding limit that the head of a file states, or None. [m/s]
+
+    >>> encoding_of_preamble({"Velocity encoding (cm/s)": "120"})
+    1.2
+    """
+    for key, text in preamble.items():
+        match = re.match(r"\s*(?:velocity[ -]?encoding|venc)\b[^()]*(?:\((?P<unit>[^)]*)\))?\s*$", str(key), re.IGNORECASE)
+        if match:
+            written = str(text).strip()
+            try:
+                return parse_given(f"{written} {match['unit']}" if match["unit"] else written, "velocity", str(key)).value or None
+            except PulsekitError:
+                continue
+    return None
 
 
 def rectified_words(signal: Signal, cycles: Any) -> str | None:

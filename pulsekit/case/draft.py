@@ -72,7 +72,7 @@ def signal_lines(recording: Recording) -> list[str]:
         lines += [f"signal = {_quoted(flows[0])}", 'quantity = "flow_rate"']
         lines.append('# computed_with_radius = "3.0 mm"    # if the instrument made this flow of a velocity and a radius (scanners and MRI do)')
     elif velocities:
-        lines += _velocity_lines(velocities[0])
+        lines += _velocity_lines(recording, velocities)
     elif gradients:
         lines += [f"signal = {_quoted(gradients[0])}", 'quantity = "pressure_gradient"']
     elif len(pressures) >= 2:
@@ -92,7 +92,9 @@ def signal_lines(recording: Recording) -> list[str]:
     return lines
 
 
-def _velocity_lines(column: str) -> list[str]:
+def _velocity_lines(recording: Recording, velocities: list[str]) -> list[str]:
+    spread = [name for name in velocities if re.search(r"dev|std|\bsd\b", name, re.IGNORECASE)]
+    column = next((name for name in velocities if name not in spread), velocities[0])
     lines = [f"signal = {_quoted(column)}"]
     for quantity, pattern in _BY_NAME:
         if re.search(pattern, column, re.IGNORECASE):
@@ -100,7 +102,13 @@ def _velocity_lines(column: str) -> list[str]:
             break
     else:
         lines.append(_yours("quantity", '"mean_velocity"', "mean_velocity, centreline_velocity or velocity_envelope (largest in the section)"))
-    lines.append('# doppler_angle = "60 deg ± 3 deg"    # its uncertainty enters the interval: 3 degrees at 60 are 9 %')
+    if spread:
+        lines.append(f"deviation = {_quoted(spread[0])}    # standard deviation of each sample, used as weight")
+    if areas := _columns(recording, "area"):
+        lines.append(f"area = {_quoted(areas[0])}    # gives the radius if [tube] states none, and the wall motion")
+        lines.append('# averaged_over = "36 ms"    # if each frame is a mean over this time; with stamp = "start" if its time is its start')
+    else:
+        lines.append('# doppler_angle = "60 deg ± 3 deg"    # its uncertainty enters the interval: 3 degrees at 60 are 9 %')
     return lines
 
 
@@ -114,6 +122,9 @@ def _cycle_lines(recording: Recording) -> list[str]:
     column = column or (recording.table[0].name if recording.table else None)
     if column is None:
         return []
+    stated = recording.stated_period
+    if stated:
+        return [f'# period = "{stated:.6g} s"    # as the head of the file states; used if nothing else is said']
     try:
         cycles = find_cycles(recording[column])
     except (SignalError, PulsekitError) as problem:
@@ -175,19 +186,28 @@ _LINE_LINES = (
 )
 
 
-def _source_lines(recording: Recording, file: str) -> list[str]:
+def _trigger_line(recording: Recording) -> str:
+    for name in recording.columns:
+        if re.search(r"trig|tacho|pulse|index", name, re.IGNORECASE):
+            return f"trigger = {_quoted(name)}    # guessed from the name of the column"
+    return '# trigger = "tacho"    # column of a trigger, if there is one'
+
+
+def _source_lines(recording: Recording, file: str, block: str | None) -> list[str]:
+    """What drives the line: one measured pressure, or several, which also give the flow at the source."""
     pressures = _columns(recording, "pressure")
-    lines = ["", "[source]", 'kind = "measured pressure"', f"file = {_quoted(file)}"]
-    if pressures:
-        lines.append(f"signal = {_quoted(pressures[0])}")
-    if len(pressures) > 1:
-        lines.append(_comment(f"More pressures stand in the file: {', '.join(pressures[1:])}; a [[station]] each compares them with the model."))
-    lines.append(_yours("station", '"0.4 m"', "position of this transducer along the line from the pump"))
-    lines.append("# trigger = \"tacho\"    # column of a trigger, if there is one")
+    place = [f"file = {_quoted(file)}", *([f"block = {_quoted(block)}"] if block else [])]
+    why = "position of this transducer along the line from the pump"
+    if len(pressures) < 2:
+        named = [f"signal = {_quoted(pressures[0])}"] if pressures else [_yours("signal", '"p"', "column of the pressure")]
+        return ["", "[source]", 'kind = "measured pressure"', *place, *named, _yours("station", '"0.4 m"', why), _trigger_line(recording)]
+    lines = ["", "[recording]", *place, _trigger_line(recording), "", "[source]", 'kind = "measured pressures"    # two or more give the flow at the source']
+    for name in pressures:
+        lines += ["", "[[station]]", f"name = {_quoted(name)}", *place, f"column = {_quoted(name)}", _yours("position", '"0.4 m"', why)]
     return lines
 
 
-def draft_case(recording: str | Path, *, kind: str | None = None) -> Draft:
+def draft_case(recording: str | Path, *, kind: str | None = None, block: str | None = None) -> Draft:
     """Draft the case file that belongs beside a recording.
 
     Parameters
@@ -195,6 +215,8 @@ def draft_case(recording: str | Path, *, kind: str | None = None) -> Draft:
     recording : path
     kind : str, optional
         ``"wall shear"`` or ``"pump line"``; by the units of the columns if not given.
+    block : str, optional
+        Which block, sheet, group or vessel, where the file has several.
 
     Returns
     -------
@@ -207,7 +229,7 @@ def draft_case(recording: str | Path, *, kind: str | None = None) -> Draft:
         If the recording cannot be read.
     """
     place = Path(recording)
-    read = read_recording(place)
+    read = read_recording(place, block=block)
     kind = kind or _kind_of(read)
     lines = [
         _comment(f"Drafted from {place.name}. Lines marked {YOURS} need your numbers: take away the leading # and put them in."),
@@ -216,11 +238,12 @@ def draft_case(recording: str | Path, *, kind: str | None = None) -> Draft:
         f"title = {_quoted(place.stem)}",
     ]
     if kind == "wall shear":
-        lines += ["", "[recording]", f"file = {_quoted(place.name)}", *signal_lines(read)]
+        which = [f"block = {_quoted(block)}"] if block else []
+        lines += ["", "[recording]", f"file = {_quoted(place.name)}", *which, *signal_lines(read)]
         lines += _said("In reading the file:", read.remarks)
         lines += ["", "[cycles]", *_cycle_lines(read), *_TUBE_LINES]
     else:
-        lines += [*_LINE_LINES[:15], *_source_lines(read, place.name), *_said("In reading the file:", read.remarks), *_LINE_LINES[15:]]
+        lines += [*_LINE_LINES[:13], *_source_lines(read, place.name, block), *_said("In reading the file:", read.remarks), *_LINE_LINES[13:]]
     lines += ["", "[uncertainty]", "# samples = 10000", "# seed = 1", ""]
     text = "\n".join(lines)
     return Draft(text, kind, text.count(f"# {YOURS}"), tuple(read.remarks))

@@ -15,7 +15,7 @@ from ..trace import Cycles, Recording, Signal, find_cycles
 from ..trace.channel import calibrated
 from ..trace.trigger import trigger_onsets
 from .case import Case
-from .caveats import refuse_wrapped
+from .caveats import encoding_of_preamble, refuse_wrapped
 from .workspace import Workspace
 
 __all__ = ["DIMENSION_OF", "Gathered", "gather", "station_signal"]
@@ -85,6 +85,9 @@ def _remarked(cycles: Cycles, remarks: tuple[str, ...]) -> Cycles:
 def period_of_preamble(recording: Recording, signal: Signal) -> tuple[float | None, tuple[str, ...]]:
     """Period of one gated cycle from the R-R interval or heart rate in the preamble, where the record holds but one cycle."""
     span = float(signal.time[-1] - signal.time[0]) + float(np.median(np.diff(signal.time)))
+    stated = recording.stated_period
+    if stated and 0.8 <= span / stated <= 1.2:
+        return stated, (f"The period of {stated:.4g} s is that of the file's head, not frames times spacing ({span:.4g} s).",)
     for key, text in recording.preamble.items():
         word = "".join(character for character in str(key).lower() if character.isalnum())
         if word in ("rr", "rrinterval", "rrintervalms", "meanrr", "nominalinterval", "nominalrr"):
@@ -132,9 +135,10 @@ def gather(case: Case, workspace: Workspace, *, progress: Any = None, stop: Any 
     signal = _typed(signal, wanted, quantity)
     if case.get("recording.invert"):
         signal = signal.replace(values=-signal.values, remarks=(*signal.remarks, f"Column {signal.name!r} was inverted, as asked."))
-    limit = case.value("recording.velocity_encoding")
-    if limit is not None and wanted == "velocity":
-        refuse_wrapped(signal, limit)
+    if wanted == "velocity":
+        limit = case.value("recording.velocity_encoding") or encoding_of_preamble(recording.preamble)
+        if limit is not None:
+            refuse_wrapped(signal, limit)
     mean_known = case.get("recording.coupling") != "ac"
     return Gathered(
         recording=recording, signal=signal, dimension=wanted, mean_known=mean_known, weights=_deviation_weights(case, recording, signal),
