@@ -14,6 +14,8 @@ from .harmonics import Harmonics
 __all__ = ["Line", "Unlocked", "unlocked_part"]
 
 _CENTRAL = 0.999
+_STANDS = 5.0  # times the median level of the spectrum
+_SMALL = 5e-3  # of the record's peak to peak: smaller lines are not named
 _NEAR = 2.0  # bins on either side of a line that belong to it
 
 
@@ -113,7 +115,7 @@ def unlocked_part(cycles: Cycles, harmonics: Harmonics, *, lines: int = 3) -> Un
     variance = float(np.var(values))
     share = float(np.mean(rest**2) / variance) if variance else 0.0
     drift = 0.5 * float(np.ptp(cycles.periods)) / cycles.period
-    found = _lines(time, rest, harmonics.frequency, lines, drift)
+    found = _lines(time, rest, harmonics.frequency, lines, drift, _SMALL * float(np.ptp(values)))
     part = Unlocked(
         lowest=float(values.min()), highest=float(values.max()), low=low, high=high, mean_cycle_low=float(mean.min()), mean_cycle_high=float(mean.max()),
         share=min(share, 1.0), rms=float(np.sqrt(np.mean(rest**2))), lines=found, remarks=(),
@@ -121,7 +123,9 @@ def unlocked_part(cycles: Cycles, harmonics: Harmonics, *, lines: int = 3) -> Un
     return Unlocked(**{**part.__dict__, "remarks": _words(part)})
 
 
-def _lines(time: NDArray[np.float64], rest: NDArray[np.float64], fundamental: float, most: int, drift: float) -> tuple[Line, ...]:
+def _lines(
+    time: NDArray[np.float64], rest: NDArray[np.float64], fundamental: float, most: int, drift: float, least: float
+) -> tuple[Line, ...]:
     """Largest peaks of the rest's amplitude spectrum that are no order and exceed its median level fivefold."""
     steps = np.diff(time)
     step = float(np.median(steps)) if steps.size else 0.0
@@ -142,7 +146,7 @@ def _lines(time: NDArray[np.float64], rest: NDArray[np.float64], fundamental: fl
     # With drifting cycles an order smears over a band that grows with it: nothing within it is called a line of its own.
     near = np.abs(order - np.round(order)) <= width / fundamental + drift * np.round(order)
     free = ~near & (frequency > width) & (frequency < 0.49 / step)
-    floor = 5.0 * float(np.median(amplitude[1:]))
+    floor = max(_STANDS * float(np.median(amplitude[1:])), least)
     out: list[Line] = []
     for _ in range(most):
         open_ = np.where(free, amplitude, 0.0)
