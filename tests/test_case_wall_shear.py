@@ -402,3 +402,14 @@ def test_area_per_frame_gives_radius_and_wall_motion(tmp_path, truth):
     # The mean of r^2 is R^2 (1 + 0.02^2/2); the area is written to twelve digits, the radius to six.
     assert answer.flow.tube.radius == pytest.approx(3.1e-3 * math.sqrt(1 + 0.02**2 / 2), rel=1e-6)
     assert answer.checks["rigid_wall"].value == pytest.approx(0.04, rel=0.01)
+
+
+def test_curves_as_a_labelled_dataset(tmp_path, truth):
+    answer = pk.analyse(flow_case(tmp_path, truth), samples=300)
+    dataset = answer.to_dataset(instants=128)
+    assert dataset["wall_shear_stress"].dims == ("time",)
+    assert dataset["wall_shear_stress"].attrs["units"] == "Pa"
+    # The same curve as the answer's own, and no slip at the wall.
+    np.testing.assert_array_equal(dataset["flow_rate"], answer.flow.flow_rate.evaluate(dataset["time"].values))
+    np.testing.assert_allclose(dataset["velocity"].isel(radius=-1), 0.0, atol=1e-15)
+    assert bool((dataset["wall_shear_stress_low"] <= dataset["wall_shear_stress_high"]).all())

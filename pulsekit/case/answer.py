@@ -127,6 +127,12 @@ class Answer:
             "units": dict(self.units),
         }
 
+    def to_dataset(self, **options: Any) -> Any:
+        """Return the curves over one cycle as a labelled ``xarray.Dataset`` in SI (see `dataset_of`)."""
+        from .labelled import dataset_of
+
+        return dataset_of(self, **options)
+
     def __repr__(self) -> str:
         verdicts = [check.verdict for check in self.checks]
         counted = ", ".join(f"{verdicts.count(word)} {word}" for word in ("holds", "doubtful", "fails", "unknown") if word in verdicts)
