@@ -65,36 +65,54 @@ def _closure(context: Any) -> list[Check]:
                 because=f"The gated cycle stops {100 * cycles.gap:.1f} % of the period short of its end; the harmonics bridge the gap.",
             )
         ]  # fmt: skip
-    folded = cycles.folded(np.array([0.0, 0.02, 0.98, 0.999]))
+    # Next to the seam the curve is read at samples' distance, so that nothing is drawn across it.
+    apart = 1.0 / _samples_per_cycle(cycles)
+    folded = np.nanmean(cycles.folded(np.array([0.0, apart, 1 - 2 * apart, 1 - apart])), axis=0)
     swing = float(np.ptp(context.harmonics.evaluate(np.linspace(0, context.harmonics.period, 128)))) or 1.0
-    ends = np.nanmean(folded, axis=0)
-    step = abs(float(ends[3] - ends[0])) / swing
-    usual = abs(float(ends[1] - ends[0])) / swing + abs(float(ends[3] - ends[2])) / swing
-    verdict = "holds" if step < max(0.05, usual) else "doubtful" if step < 0.2 else "fails"
+    usual = abs(float(folded[1] - folded[0])) + abs(float(folded[3] - folded[2]))
+    step = max(abs(float(folded[0] - folded[3])) - usual, 0.0) / swing
+    verdict = "holds" if step < 0.05 else "doubtful" if step < 0.2 else "fails"
     return [
         Check(
             name="cycle_closure", label=label, verdict=verdict, value=step, limit=0.05, source="our allowance",
-            because=f"Where the cycle closes, the mean curve steps by {100 * step:.2g} % of its swing; a step feeds the high harmonics, to which wall shear is sensitive.",
+            because=f"Where the cycle closes, the mean curve steps by {100 * step:.2g} % of its swing beyond its slope there; a step feeds the high harmonics, to which wall shear is sensitive.",
         )
     ]  # fmt: skip
+
+
+def _samples_per_cycle(cycles: Any) -> float:
+    return float(cycles.samples[0].size / cycles.count)
+
+
+def _beyond(cycles: Any, harmonics: Any, per_cycle: float) -> float:
+    """What the mean cycle holds beyond the kept harmonics, each weighed as in the wall shear by the root of its order, over what is kept."""
+    count = harmonics.count
+    size = int(min(per_cycle, 512))
+    last = min(2 * count + 4, (size - 1) // 2)
+    kept = float(np.sum(np.arange(1, count + 1) * harmonics.amplitude[1:] ** 2))
+    if kept == 0:
+        return 0.0
+    mean = np.nanmean(cycles.folded(np.arange(size) / size), axis=0)
+    if last <= count or not np.isfinite(mean).all():
+        # No samples to tell: what the last kept harmonic carries the next may carry too.
+        return float(harmonics.amplitude[-1] * np.sqrt(count / kept))
+    power = np.abs(np.fft.rfft(mean)[count + 1 : last + 1] * 2 / size) ** 2
+    return float(np.sqrt(np.sum(np.arange(count + 1, last + 1) * power) / kept))
 
 
 def _resolved(context: Any) -> list[Check]:
     cycles, harmonics = context.cycles, context.harmonics
     if cycles is None or harmonics is None:
         return [_unknown("resolved", "Resolved in time", "No recording: what lies beyond the given harmonics is not known.")]
-    rows, _, _ = cycles.samples
-    per_cycle = rows.size / cycles.count
-    # Wall shear weighs harmonic n by about sqrt(n): what the last kept harmonic still carries is what the next may.
-    weight = harmonics.amplitude[1:] * np.sqrt(np.arange(1, harmonics.count + 1)) if harmonics.count else np.zeros(1)
-    tail = float(weight[-1] / (weight.max() or 1.0)) if weight.size else 0.0
+    per_cycle = _samples_per_cycle(cycles)
+    tail = _beyond(cycles, harmonics, per_cycle)
     samples_ok = per_cycle >= 2.5 * max(harmonics.count, 1) and per_cycle >= 16
     verdict = "holds" if samples_ok and tail < 0.1 else "doubtful"
     said = "" if context.antialias_filter else " Aliasing cannot be excluded from the samples; state recording.antialias_filter."
     return [
         Check(
             name="resolved", label="Resolved in time", verdict=verdict, value=per_cycle, limit=2.5 * harmonics.count, source="sampling theorem with a margin",
-            because=f"{per_cycle:.4g} samples per cycle hold {harmonics.count} harmonics; the last one still carries {100 * tail:.2g} % of the largest in the wall "
+            because=f"{per_cycle:.4g} samples per cycle hold {harmonics.count} harmonics; what the samples show beyond them is {100 * tail:.2g} % of the oscillating wall "
             f"shear.{said}",
         )
     ]  # fmt: skip
