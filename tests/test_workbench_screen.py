@@ -15,12 +15,14 @@ from pulsekit.workbench.background import Latest
 from pulsekit.workbench.screen import script, style
 
 
-@pytest.fixture()
+@pytest.fixture
 def bench(tmp_path: Path, demo: Path) -> WallShearWorkbench:
     """A workbench on a copy of the forearm case that records the messages that it sends."""
     shutil.copytree(demo / "forearm", tmp_path / "forearm")
     text = (demo / "forearm.toml").read_text(encoding="utf-8")
-    (tmp_path / "forearm.toml").write_text(text + "\n[uncertainty]\nsamples = 400\n", encoding="utf-8")  # few: the intervals do not matter here
+    (tmp_path / "forearm.toml").write_text(
+        text + "\n[uncertainty]\nsamples = 400\n", encoding="utf-8"
+    )  # few: the intervals do not matter here
     widget = WallShearWorkbench(tmp_path / "forearm.toml")
     widget._background.rest = 30.0  # nothing refines by itself while messages are counted
     sent: list[dict] = []
@@ -96,7 +98,15 @@ def test_a_fault_of_ours_is_one_message_and_the_state_stays(bench, monkeypatch):
     assert bench.state.case is case
 
 
-@pytest.mark.parametrize("asked", [{"do": "nonsense"}, {"do": "leave_out", "number": 999}, {"do": "set", "key": "tube.colour", "text": "red"}, {"do": "choose", "text": "gone.csv"}])
+@pytest.mark.parametrize(
+    "asked",
+    [
+        {"do": "nonsense"},
+        {"do": "leave_out", "number": 999},
+        {"do": "set", "key": "tube.colour", "text": "red"},
+        {"do": "choose", "text": "gone.csv"},
+    ],
+)
 def test_odd_requests_cost_nothing(bench, asked):
     case = bench.state.case
     bench._background.rest = 0.05

@@ -22,7 +22,7 @@ from pulsekit.workbench.wall_shear_givens import wall_shear_givens
 from pulsekit.workbench.wall_shear_state import WallShearState
 
 
-@pytest.fixture()
+@pytest.fixture
 def folder(tmp_path: Path, demo: Path) -> Path:
     """A copy of the forearm case with its recording."""
     shutil.copytree(demo / "forearm", tmp_path / "forearm")
@@ -30,7 +30,7 @@ def folder(tmp_path: Path, demo: Path) -> Path:
     return tmp_path
 
 
-@pytest.fixture()
+@pytest.fixture
 def state(folder: Path) -> WallShearState:
     return WallShearState(folder / "forearm.toml")
 
@@ -165,7 +165,10 @@ def test_intervals_come_with_the_full_answer_and_not_before(state):
     assert answer_rows(state.answer, None, full=state.full, lead=(), cautions=())["findings"][0]["interval"] == ""
     assert state.refine()
     assert state.full
-    rows = {row["name"]: row for row in answer_rows(state.answer, None, full=True, lead=("peak_wall_shear_stress",), cautions=("c",))["findings"]}
+    rows = {
+        row["name"]: row
+        for row in answer_rows(state.answer, None, full=True, lead=("peak_wall_shear_stress",), cautions=("c",))["findings"]
+    }
     assert " to " in rows["peak_wall_shear_stress"]["interval"]
     assert rows["peak_wall_shear_stress"]["shares"]
     assert next(iter(rows)) == "peak_wall_shear_stress"
@@ -214,7 +217,9 @@ def test_pinning_compares(state):
     rows = answer_rows(state.answer, state.reference, full=False, lead=(), cautions=())
     changes = {row["name"]: row["change"] for row in rows["findings"]}
     expected = 100 * (value(state) / reference.findings["time_averaged_wall_shear_stress"].value - 1)
-    assert float(changes["time_averaged_wall_shear_stress"].split()[0].replace("−", "-")) == pytest.approx(expected, abs=0.06)  # one decimal
+    assert float(changes["time_averaged_wall_shear_stress"].split()[0].replace("−", "-")) == pytest.approx(
+        expected, abs=0.06
+    )  # one decimal
     assert "tube.diameter = 4.10 mm ± 0.10 mm" in rows["reference"]
     panels = {panel.id: panel for panel in wall_shear_panels(state.answer, state.reference)}
     assert any(series.pale and series.name == "pinned" for series in panels["wall_shear_stress"].series)

@@ -105,7 +105,7 @@ def drawing_panel(answer: Any, selected: int = 0) -> Panel:
         series.append(Series(kind="dots", role="measured", name="stations", arrays=[[shown(answer, s.position, "length") for s in stations], [0.0] * len(stations)]))
     return Panel(
         id="drawing", title=NAMES["drawing"], click="select_element", note=f"source at 0, {line.end.kind} end; click an element to select it", x=_along(answer),
-        y=Axis(label="Bore", low=-1.6, high=1.6, ticks={}), series=series,
+        y=Axis(label="Bore", low=-1.6, high=1.6, ticks={0.0: " "}), series=series,
     )  # fmt: skip
 
 
@@ -159,7 +159,7 @@ def turn_panel(answer: Any) -> tuple[Panel, Series]:
     highest = float(np.abs(closed).max()) or 1.0
     return Panel(
         id="turn", title=NAMES["turn"], x=Axis(label="Time in the turn (ms)", low=0.0, high=turn),
-        y=Axis(label=_label(answer, "Pressure about its mean", "pressure"), low=-1.1 * highest, high=1.1 * highest), series=[*series], note="move the cursor along the line",
+        y=Axis(label=_label(answer, "Pressure", "pressure"), low=-1.1 * highest, high=1.1 * highest), series=[*series], note="move the cursor along the line",
     ), heat  # fmt: skip
 
 
@@ -167,7 +167,7 @@ def field_panel(answer: Any, heat: Series) -> Panel:
     """Pressure over position and time: where it swings, and how waves travel."""
     turn = 1e3 / answer.response.frequency
     return Panel(
-        id="field", title=NAMES["field"], x=_along(answer), y=Axis(label="Time in the turn (ms)", low=0.0, high=turn), series=[heat],
+        id="field", title=NAMES["field"], x=_along(answer), y=Axis(label="Time (ms)", low=0.0, high=turn), series=[heat],
     )  # fmt: skip
 
 

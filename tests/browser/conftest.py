@@ -12,7 +12,15 @@ import pytest
 from .serving import browser, served, write_notebook
 
 #: What the pages' own hosts say; nothing of it is ours.
-NOT_OURS = ("ERR_NAME_NOT_RESOLVED", "ERR_INTERNET_DISCONNECTED", "ERR_CONNECTION", "favicon", "Unsatisfied version", "No satisfying version", "404")
+NOT_OURS = (
+    "ERR_NAME_NOT_RESOLVED",
+    "ERR_INTERNET_DISCONNECTED",
+    "ERR_CONNECTION",
+    "favicon",
+    "Unsatisfied version",
+    "No satisfying version",
+    "404",
+)
 
 
 @pytest.fixture(scope="session")

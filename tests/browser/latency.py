@@ -55,7 +55,9 @@ def main(case: Path, chromium: str) -> float:
             page.wait_for_selector(".pk path.pk-line", timeout=60_000)
             page.wait_for_timeout(1000)
             times = measure(page)
-    print(f"key press to redrawn screen: median {statistics.median(times):.0f} ms, quickest {min(times):.0f}, slowest {max(times):.0f} of {len(times)}")
+    print(
+        f"key press to redrawn screen: median {statistics.median(times):.0f} ms, quickest {min(times):.0f}, slowest {max(times):.0f} of {len(times)}"
+    )
     return statistics.median(times)
 
 

@@ -20,7 +20,9 @@ def ready(page) -> None:
 
 
 def settled(page) -> None:
-    page.wait_for_function("document.querySelector('.pk').dataset.full === 'true' && document.querySelector('.pk').dataset.busy === 'no'", timeout=WAIT)
+    page.wait_for_function(
+        "document.querySelector('.pk').dataset.full === 'true' && document.querySelector('.pk').dataset.busy === 'no'", timeout=WAIT
+    )
 
 
 def shear(page) -> str:
@@ -28,12 +30,17 @@ def shear(page) -> str:
 
 
 def redrawn(page, before: str) -> None:
-    page.wait_for_function(f"(before) => document.querySelector('{SHEAR}').getAttribute('d') !== before".replace("'.pk-picture", "'.pk-picture"), arg=before, timeout=WAIT)
+    page.wait_for_function(
+        f"(before) => document.querySelector('{SHEAR}').getAttribute('d') !== before".replace("'.pk-picture", "'.pk-picture"),
+        arg=before,
+        timeout=WAIT,
+    )
 
 
 def shown_findings(page) -> dict[str, tuple[str, str]]:
     rows = page.eval_on_selector_all(
-        ".pk-finding", "rows => rows.map(r => [r.dataset.name, r.querySelector('.pk-f-value').textContent, r.querySelector('.pk-f-interval').textContent])"
+        ".pk-finding",
+        "rows => rows.map(r => [r.dataset.name, r.querySelector('.pk-f-value').textContent, r.querySelector('.pk-f-interval').textContent])",
     )
     return {name: (value, interval) for name, value, interval in rows}
 
@@ -48,7 +55,9 @@ def page(open_page, voila):
 
 def test_an_afternoon(page, desk: Path, open_page, voila):
     """Every picture in view; drag the radius, step the cursor, leave out a beat, pin, save, open the report; the numbers are those of a run."""
-    boxes = page.eval_on_selector_all(".pk-picture", "all => all.map(p => { const b = p.getBoundingClientRect(); return [b.top, b.bottom, b.left, b.right, b.height]; })")
+    boxes = page.eval_on_selector_all(
+        ".pk-picture", "all => all.map(p => { const b = p.getBoundingClientRect(); return [b.top, b.bottom, b.left, b.right, b.height]; })"
+    )
     assert len(boxes) == 7
     for top, bottom, left, right, height in boxes:
         assert top >= 0
@@ -199,7 +208,9 @@ def test_dark_theme_and_small_window(open_page, voila):
     page = open_page(f"{voila}/voila/render/case.ipynb?theme=dark", viewport={"width": 1100, "height": 900})
     ready(page)
     assert "dark" in page.locator(".pk").get_attribute("class").split()
-    ink, paper = page.evaluate("(() => { const s = getComputedStyle(document.querySelector('.pk')); return [s.color, s.backgroundColor]; })()")
+    ink, paper = page.evaluate(
+        "(() => { const s = getComputedStyle(document.querySelector('.pk')); return [s.color, s.backgroundColor]; })()"
+    )
     assert contrast(ink, paper) > 7  # WCAG 2.2, 1.4.6: enhanced contrast (from memory)
     assert page.evaluate("document.documentElement.scrollWidth") <= 1100
     boxes = page.eval_on_selector_all(".pk-picture", "all => all.map(p => p.getBoundingClientRect().width)")

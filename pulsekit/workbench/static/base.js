@@ -10,6 +10,8 @@ function make(tag, attributes = {}, ...children) {
     else if (name === "value") node.value = value;
     else node.setAttribute(name, value === true ? "" : value);
   }
+  // A notebook's own single-key commands must not take what is typed here: it looks for this on the focused node itself.
+  if (["input", "select", "button", "summary", "a"].includes(tag) || attributes.tabindex) node.setAttribute("data-lm-suppress-shortcuts", "true");
   for (const child of children) if (child !== null && child !== undefined) node.append(child);
   return node;
 }

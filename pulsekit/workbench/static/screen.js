@@ -46,7 +46,7 @@ class Bench {
     this.cautions = make("footer", { class: "pk-cautions" });
     const middle = make("main", { class: "pk-middle" }, tools, grid);
     const left = make("aside", { class: "pk-left", "aria-label": "Givens" }, make("h2", {}, this.desk.title), this.notice, this.givens.root);
-    this.root = make("div", { class: "pk", "data-lm-suppress-shortcuts": "true", "data-kind": this.desk.kind }, left, middle, this.answer.root, this.cautions);
+    this.root = make("div", { class: "pk", "data-kind": this.desk.kind }, left, middle, this.answer.root, this.cautions);
     this.root.addEventListener("dragover", (event) => { event.preventDefault(); this.root.classList.add("dropping"); });
     this.root.addEventListener("dragleave", (event) => { if (event.target === this.root) this.root.classList.remove("dropping"); });
     this.root.addEventListener("drop", (event) => {
@@ -60,6 +60,8 @@ class Bench {
     for (const wait of [0, 150, 600, 2000]) setTimeout(() => this.root.isConnected && this.fitHeight(), wait);
     this.onResize = () => this.fitHeight();
     window.addEventListener("resize", this.onResize);
+    this.widths = new ResizeObserver(() => this.fitHeight());
+    this.widths.observe(host);
   }
 
   // As tall as the window leaves room for, so that every picture is in view without scrolling.
@@ -68,6 +70,11 @@ class Bench {
     const outer = lab ? this.root.closest(".jp-WindowedPanel-outer, .jp-Notebook, .jp-NotebookPanel-notebook") : null;
     const above = this.root.getBoundingClientRect().top + window.scrollY;
     const room = outer ? outer.getBoundingClientRect().height - 12 : window.innerHeight - Math.min(above, 40) - 4;
+    const width = this.root.clientWidth;
+    if (width) {
+      this.root.classList.toggle("narrow", width < 1330);
+      this.root.classList.toggle("tight", width < 1030);
+    }
     this.root.style.setProperty("--tall", `${Math.max(room, 620)}px`);
   }
 
@@ -176,6 +183,7 @@ class Bench {
     this.model.off("change", this.onChange);
     this.model.off("msg:custom", this.onMessage);
     this.themes.disconnect();
+    this.widths.disconnect();
     window.removeEventListener("resize", this.onResize);
     for (const picture of Object.values(this.pictures)) picture.observer.disconnect();
   }
