@@ -258,16 +258,16 @@ def _profile_near_wall(numbers: NDArray[np.float64], y: NDArray[np.float64]) -> 
 
     With v(y) = u(1 - y): (1 - y) v'' - v' - zeta^2 (1 - y) v = -(1 - y) g, g the pressure factor.
     """
-    zeta2 = 1j * numbers**2
+    # In t = alpha y, so that no power of alpha overflows: v = sum d_m t^m, d_0 = 0, d_1 = T/alpha, 2 d_2 - d_1/alpha = -g.
     shear = shear_factor_of_square(numbers)
-    g = 2.0 * shear + zeta2
-    # v = sum c_m y^m, c_0 = 0, c_1 = T, 2 c_2 - c_1 = -g + 0
-    previous2, previous, current = np.zeros_like(zeta2), np.zeros_like(zeta2), shear
-    total, power = shear * y, y.astype(float)
+    g = 2.0 * shear / numbers**2 + 1j
+    t = numbers * y
+    previous2, previous, current = np.zeros_like(shear), np.zeros_like(shear), shear / numbers
+    total, power = current * t, t
     for m in range(1, 40):
-        forcing = -g if m == 1 else (g if m == 2 else 0.0)
-        following = (m * m * current + zeta2 * (previous - previous2) + forcing) / (m * (m + 1))
-        power = power * y
+        forcing = -g if m == 1 else (g / numbers if m == 2 else 0.0)
+        following = (m * m * current / numbers + 1j * (previous - previous2 / numbers) + forcing) / (m * (m + 1))
+        power = power * t
         total = total + following * power
         previous2, previous, current = previous, current, following
     return total
