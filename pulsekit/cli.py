@@ -25,6 +25,10 @@ def main(arguments: list[str] | None = None) -> int:
 
     0: done. 2: the input was not usable; one sentence on standard error says what, where and the remedy.
     """
+    for stream in (sys.stdout, sys.stderr):
+        # A console that cannot show '±' or 'τ' gets a mark in its place rather than a crash.
+        if hasattr(stream, "reconfigure"):
+            stream.reconfigure(errors="replace")
     try:
         code = commands.main(args=arguments, prog_name="pulsekit", standalone_mode=False)
     except PulsekitError as problem:

@@ -95,6 +95,17 @@ def test_no_traceback_in_a_real_process(folder):
     assert not (folder / "answer").exists()
 
 
+def test_a_console_of_plain_ascii(folder):
+    import os
+
+    done = subprocess.run(
+        [sys.executable, "-m", "pulsekit.cli", "run", "case.toml", "--out", "answer", "--no-pictures"], cwd=folder, capture_output=True, check=False,
+        timeout=120, env=os.environ | {"PYTHONIOENCODING": "ascii"},
+    )  # fmt: skip
+    assert done.returncode == 0, done.stderr
+    assert b"Time-averaged wall shear stress" in done.stdout
+
+
 @pytest.mark.parametrize("verb", [(), ("draft",), ("run",), ("open",), ("study",)])
 def test_help(capsys, verb):
     code, out, _ = called(capsys, *verb, "--help")

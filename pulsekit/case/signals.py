@@ -273,7 +273,7 @@ def _two_columns(case: Case, recording: Recording) -> Gathered:
     up, zero_up = prepared(case, "recording", pair[0], workspace)
     down, zero_down = prepared(case, "recording", pair[1], workspace)
     up, down = _typed(up, "pressure", "pressure_gradient"), _typed(down, "pressure", "pressure_gradient")
-    known = zero_up and zero_down
+    known = zero_up and zero_down and case.get("recording.coupling") != "ac"
     signal, _ = _difference(up, down, () if known else (_NO_ZERO,))
     return Gathered(recording=recording, signal=signal, dimension="pressure", mean_known=known, needs_distance=True)
 
@@ -309,7 +309,7 @@ def _two_stations(case: Case, workspace: Workspace) -> Gathered:
         signal = _typed(signal, "pressure", "pressure_gradient")
         delay = case.value(f"station.{index}.delay")
         signals.append(signal if not delay else Signal(signal.time - delay, signal.values, unit=signal.unit, name=signal.name, remarks=signal.remarks))
-    known = all(zeroed for _, zeroed, _ in found)
+    known = all(zeroed for _, zeroed, _ in found) and not any(case.get(f"station.{index}.coupling") == "ac" for index in order)
     signal, pair = _difference(signals[0], signals[1], () if known else (_NO_ZERO,))
     rise = (case.value(f"station.{order[0]}.height") or 0.0) - (case.value(f"station.{order[1]}.height") or 0.0)
     steps: tuple[Callable[..., Any], ...] = ()
