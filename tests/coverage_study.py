@@ -90,7 +90,9 @@ def one_recording(folder: Path, scenario: Scenario, seed: int, samples: int) -> 
     viscosity = float(draw(parse_given(scenario.viscosity, "viscosity"), rng, 1)[0])
     fluid = pk.Fluid(density=DENSITY, viscosity=viscosity)
     true = tube_values(
-        pk.solve(pk.Harmonics(frequency=1 / PERIOD, coefficients=flow), quantity="flow_rate", tube=pk.CircularTube(radius=radius), fluid=fluid)
+        pk.solve(
+            pk.Harmonics(frequency=1 / PERIOD, coefficients=flow), quantity="flow_rate", tube=pk.CircularTube(radius=radius), fluid=fluid
+        )
     )
     instants, values = recorded(rng, scenario, flow)
     path = folder / "run.csv"
@@ -130,7 +132,10 @@ def main() -> None:
     for scenario in SCENARIOS:
         start = time.perf_counter()
         table = study(scenario, recordings, samples)
-        print(f"{scenario.name}: {recordings} recordings of {scenario.cycles[0]} to {scenario.cycles[1]} cycles, {time.perf_counter() - start:.0f} s", flush=True)
+        print(
+            f"{scenario.name}: {recordings} recordings of {scenario.cycles[0]} to {scenario.cycles[1]} cycles, {time.perf_counter() - start:.0f} s",
+            flush=True,
+        )
         for name, row in table.items():
             print(
                 f"  {name:34s} inside {100 * row['inside']:5.1f} %, truth below {100 * row['above']:4.1f} %, above {100 * row['below']:4.1f} %, "

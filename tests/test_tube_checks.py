@@ -130,13 +130,20 @@ def test_shear_thinning_and_what_it_would_do():
     fast = flow(mean=1e-9, swing=0.05, radius=0.05)
     assert "9 % higher" in tube_checks(fast, newtonian=curve)["newtonian"].because
     # A measured pressure gradient fixes the mean wall shear whatever the liquid.
-    pressed = pk.solve(pk.Harmonics(frequency=1.2, coefficients=[100.0]), quantity="pressure_gradient", tube=pk.CircularTube(radius=RADIUS), fluid=pk.Fluid(density=1060.0, viscosity=3.5e-3))
+    pressed = pk.solve(
+        pk.Harmonics(frequency=1.2, coefficients=[100.0]),
+        quantity="pressure_gradient",
+        tube=pk.CircularTube(radius=RADIUS),
+        fluid=pk.Fluid(density=1060.0, viscosity=3.5e-3),
+    )
     assert "0 % " in tube_checks(pressed, newtonian=curve)["newtonian"].because.rpartition("about")[2]
 
 
 def test_newtonian_hears_the_samples():
     rates = np.linspace(50, 150, 100)
-    check = tube_checks(flow(), newtonian=lambda rate: 3.5e-3 * np.where(np.asarray(rate) < 75, 1.5, 1.0), samples={"time_averaged_wall_shear_rate": rates})["newtonian"]
+    check = tube_checks(
+        flow(), newtonian=lambda rate: 3.5e-3 * np.where(np.asarray(rate) < 75, 1.5, 1.0), samples={"time_averaged_wall_shear_rate": rates}
+    )["newtonian"]
     assert "fails in 25 % of the samples" in check.because
     assert check.verdict == "doubtful"
 
@@ -184,14 +191,21 @@ def recorded(beats=10, *, scatter=0.0, drift=0.0, noise=0.0, seed=3, step=0.0, r
     rng = np.random.default_rng(seed)
     time = np.arange(beats * rate) / rate
     strength = np.repeat(1 + scatter * rng.standard_normal(beats), rate)
-    values = strength * (1 + 0.5 * np.cos(2 * np.pi * time)) + drift * time / beats + noise * rng.standard_normal(time.size) + step * (time % 1.0)
+    values = (
+        strength * (1 + 0.5 * np.cos(2 * np.pi * time))
+        + drift * time / beats
+        + noise * rng.standard_normal(time.size)
+        + step * (time % 1.0)
+    )
     signal = pk.Signal(time, values * 1e-6)
     cycles = pk.find_cycles(signal, period=1.0)
     return cycles, pk.decompose(cycles)
 
 
 def checks_of(cycles, harmonics, **more):
-    solved = pk.solve(harmonics, quantity="flow_rate", tube=pk.CircularTube(radius=RADIUS), fluid=pk.Fluid(density=1060.0, viscosity=3.5e-3))
+    solved = pk.solve(
+        harmonics, quantity="flow_rate", tube=pk.CircularTube(radius=RADIUS), fluid=pk.Fluid(density=1060.0, viscosity=3.5e-3)
+    )
     return tube_checks(solved, cycles=cycles, harmonics=harmonics, signal=cycles.signal, quantity="flow_rate", **more)
 
 
@@ -249,7 +263,9 @@ def test_an_unstated_instrument_is_unknown_with_the_size_of_the_doubt():
 
 def test_a_mean_velocity_tells_where_it_was_sampled():
     cycles, harmonics = recorded()
-    solved = pk.solve(harmonics, quantity="mean_velocity", tube=pk.CircularTube(radius=RADIUS), fluid=pk.Fluid(density=1060.0, viscosity=3.5e-3))
+    solved = pk.solve(
+        harmonics, quantity="mean_velocity", tube=pk.CircularTube(radius=RADIUS), fluid=pk.Fluid(density=1060.0, viscosity=3.5e-3)
+    )
     known = {"cycles": cycles, "harmonics": harmonics, "quantity": "mean_velocity"}
     assert tube_checks(solved, **known)["sample_volume"].verdict == "unknown"
     assert tube_checks(solved, **known, sample_volume="whole lumen")["sample_volume"].verdict == "holds"
