@@ -8,6 +8,7 @@ from typing import Any
 import numpy as np
 import pandas as pd
 
+from ..appraisal.finding import Checks
 from ..errors import PulsekitError
 from ..quantities import from_si
 from ..trace import cycle_coefficients
@@ -19,6 +20,7 @@ from .caveats import rectified_words, with_radius_of_area
 from .liquids import fluid_of
 from .measurement import Measurement, measure
 from .provenance import provenance
+from .threshold import threshold_check, threshold_words
 from .units import reader_units
 from .workspace import Workspace, part_key
 
@@ -73,23 +75,29 @@ def analyse_wall_shear(
     more: dict[str, Any] = {}
     if not nominal_only:
         remarks += other_alignment(case, measurement, findings, workspace, tube, fluid)
-        spread = propagate_tube(case, measurement, flow, findings, checks, samples=samples, progress=progress, stop=stop, identities=identities)
+        spread = propagate_tube(
+            case, measurement, flow, findings, checks, samples=samples, progress=progress, stop=stop, identities=identities
+        )
         findings, checks = spread.findings, flow.checks(**tube_context(case, measurement, flow, spread.samples))
         remarks += [sentence for sentence in spread.remarks if sentence not in remarks]
         more = {
             "bands": spread.bands, "shares_definition": spread.shares_definition, "left_out_inputs": spread.left_out, "improve": spread.improve,
             "samples": spread.samples, "extras": spread.extras,
         }  # fmt: skip
-    findings = reliant(findings, checks, str(case.get("recording.quantity")))
-    shown = shown_findings(findings, units)
     per_cycle = (
         pd.DataFrame() if nominal_only
         else workspace.remember(part_key("per cycle", case, *case.data), lambda: per_cycle_table(measurement, flow, units))
     )  # fmt: skip
+    threshold = threshold_check(case, findings, per_cycle)
+    findings = reliant(findings, checks, str(case.get("recording.quantity")))
+    shown = shown_findings(findings, units)
+    overall = overall_words(shown, checks)
+    if threshold is not None:
+        checks, overall = Checks([*checks, threshold]), f"{overall} {threshold_words(threshold)}"
     return Answer(
         case=case, findings=shown, checks=checks, remarks=tuple(remarks), units=units, flow=flow, recording=measurement.gathered.recording,
         signal=measurement.gathered.signal, cycles=measurement.cycles, harmonics=measurement.raw, per_cycle=per_cycle,
-        overall=overall_words(shown, checks),
+        overall=overall,
         provenance=provenance(case, measurement.gathered.recording, more.get("extras", {})), **more,
     )  # fmt: skip
 
@@ -125,7 +133,9 @@ def other_alignment(case: Case, measurement: Measurement, findings: Any, workspa
     for name in ("time_averaged_wall_shear_stress", "peak_wall_shear_stress", "oscillatory_shear_index"):
         value, mine = found[name].value, findings[name].value
         if value is not None and mine is not None:
-            parts.append(f"{name.replace('_', ' ')} {value:.4g} in place of {mine:.4g}" + (f" {found[name].unit}" if found[name].unit else ""))
+            parts.append(
+                f"{name.replace('_', ' ')} {value:.4g} in place of {mine:.4g}" + (f" {found[name].unit}" if found[name].unit else "")
+            )
     if not parts:
         return []
     return [f'Cycles were averaged by align = "{measurement.cycles.align}"; "{other}" would give {", ".join(parts)}.']
@@ -155,5 +165,3 @@ def per_cycle_table(measurement: Measurement, flow: TubeFlow, units: Any) -> pd.
             row[head] = np.nan if value is None else (from_si(value, unit) if unit and unit != si_units[name] else value)
         rows.append(row)
     return pd.DataFrame(rows)
-
-
