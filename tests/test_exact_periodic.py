@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+import itertools
+
 import numpy as np
 import pytest
 from hypothesis import given, settings
@@ -98,7 +100,7 @@ def test_mean_absolute_by_quadrature_between_zeros(seed):
     np.testing.assert_allclose(evaluate(x, zeros), 0, atol=ROUNDING)
     edges = np.concatenate([[0.0], zeros, [2 * np.pi]])
     # Adaptive quadrature of smooth pieces to 1e-11.
-    wanted = sum(abs(quad(lambda p: evaluate(x, p), a, b, epsabs=1e-12, limit=200)[0]) for a, b in zip(edges[:-1], edges[1:], strict=True))
+    wanted = sum(abs(quad(lambda p: evaluate(x, p), a, b, epsabs=1e-12, limit=200)[0]) for a, b in itertools.pairwise(edges))
     assert mean_absolute(x) == pytest.approx(wanted / (2 * np.pi), abs=1e-11)
 
 

@@ -123,7 +123,7 @@ def propagate(
     quantity: str,
     coefficients: NDArray[np.complex128],
     *,
-    angular_frequency: float,
+    angular_frequency: float | NDArray[np.float64],
     radius: NDArray[np.float64],
     viscosity: NDArray[np.float64],
     density: NDArray[np.float64],
@@ -139,7 +139,7 @@ def propagate(
         As in `pulsekit.tube.solve`; an envelope counts as the velocity on the axis times a constant.
     coefficients : ndarray of complex, shape (S, N + 1)
         Of the measured quantity. [SI]
-    angular_frequency : float
+    angular_frequency : float or ndarray, shape (S,)
         Of the fundamental. [rad/s]
     radius, viscosity, density : ndarray, shape (S,)
         [m], [Pa s], [kg/m^3]
