@@ -5,7 +5,7 @@ the true radius and viscosity from the distributions that the case states for th
 scatter from cycle to cycle and white noise, written to a file and analysed like any other. Run as a script for the
 long form:
 
-    python tests/coverage_study.py [recordings] [samples]
+    python tests/coverage_study.py [recordings] [samples] [word in the name of a scenario]
 """
 
 from __future__ import annotations
@@ -129,7 +129,10 @@ def main() -> None:
     """Print the table of all scenarios."""
     recordings = int(sys.argv[1]) if len(sys.argv) > 1 else 1000
     samples = int(sys.argv[2]) if len(sys.argv) > 2 else 4000
+    word = sys.argv[3] if len(sys.argv) > 3 else ""
     for scenario in SCENARIOS:
+        if word not in scenario.name:
+            continue
         start = time.perf_counter()
         table = study(scenario, recordings, samples)
         print(
