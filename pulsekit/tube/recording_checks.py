@@ -92,10 +92,11 @@ def _beyond(cycles: Any, harmonics: Any, per_cycle: float) -> float:
     kept = float(np.sum(np.arange(1, count + 1) * harmonics.amplitude[1:] ** 2))
     if kept == 0:
         return 0.0
-    mean = np.nanmean(cycles.folded(np.arange(size) / size), axis=0)
-    if last <= count or not np.isfinite(mean).all():
+    folded = cycles.folded(np.arange(size) / size)
+    if last <= count or not np.isfinite(folded).any(axis=0).all():
         # No samples to tell: what the last kept harmonic carries the next may carry too.
         return float(harmonics.amplitude[-1] * np.sqrt(count / kept))
+    mean = np.nanmean(folded, axis=0)
     power = np.abs(np.fft.rfft(mean)[count + 1 : last + 1] * 2 / size) ** 2
     return float(np.sqrt(np.sum(np.arange(count + 1, last + 1) * power) / kept))
 
