@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import json
+import re
 import shutil
 from pathlib import Path
 
@@ -225,6 +226,22 @@ def test_pinning_compares(state):
     assert any(series.pale and series.name == "pinned" for series in panels["wall_shear_stress"].series)
     state.unpin()
     assert state.reference is None
+
+
+def test_the_change_gets_an_interval_in_which_common_unknowns_cancel(state):
+    state.set_value("uncertainty.samples", "400")
+    state.pin()
+    state.set_value("fluid.viscosity", "3.6 mPa*s ± 6 %")
+    assert state.refine()
+    assert state.compare_now()
+    rows = answer_rows(state.answer, state.reference, full=True, lead=(), cautions=(), comparison=state.comparison)
+    words = {row["name"]: row["change"] for row in rows["findings"]}["time_averaged_wall_shear_stress"]
+    change, low, high = (float(part.replace("−", "-")) for part in re.findall(r"[−+\d.]+", words))
+    assert low < change < high
+    # The radius is common: the interval of the change is narrower than that of the two viscosities and radii together.
+    assert high - low < 30
+    state.slide("tube.radius", 2.2)
+    assert state.comparison is None
 
 
 def test_change_in_words():

@@ -6,7 +6,6 @@ from collections.abc import Sequence
 from typing import Any
 
 from ..case import Answer
-from ..errors import PulsekitError
 from ..quantities import pretty_unit
 from ..report.rows import check_rows, decimals_of, finding_rows, interval_head, number_text
 
@@ -14,17 +13,17 @@ __all__ = ["answer_rows", "change_words"]
 
 
 def answer_rows(
-    answer: Answer | None, reference: Answer | None, *, full: bool, lead: Sequence[str], cautions: Sequence[str]
+    answer: Answer | None, reference: Answer | None, *, full: bool, lead: Sequence[str], cautions: Sequence[str], comparison: Any = None
 ) -> dict[str, Any]:
     """Return findings, checks, remarks and cautions of an answer as JSON.
 
-    ``full`` tells whether intervals and shares belong to it; where they do not (yet), none is shown. Findings
+    ``comparison`` (of `pulsekit.case.compare`), if it is there, gives the changes their intervals. ``full`` tells whether intervals and shares belong to it; where they do not (yet), none is shown. Findings
     named in ``lead`` stand first and large.
     """
     if answer is None:
         return {"empty": True, "cautions": list(cautions)}
     head = interval_head(answer) if full else "95 % interval: being computed"
-    changes = _changes(answer, reference, full=full)
+    changes = _changes(answer, reference, comparison)
     rows = []
     for row in finding_rows(answer.findings):
         rows.append(
@@ -79,7 +78,7 @@ def _differing(old: Any, new: Any, prefix: str = "") -> list[str]:
     return rows
 
 
-def _changes(answer: Answer, reference: Answer | None, *, full: bool) -> dict[str, str]:
+def _changes(answer: Answer, reference: Answer | None, comparison: Any) -> dict[str, str]:
     """Change of each finding against the reference in words; with its interval where the unknowns were drawn together."""
     if reference is None or reference is answer:
         return {}
@@ -88,9 +87,7 @@ def _changes(answer: Answer, reference: Answer | None, *, full: bool) -> dict[st
         before = reference.findings.get(finding.name)
         if before is not None and finding.value is not None and before.value is not None:
             words[finding.name] = change_words(before.value, finding.value)
-    if full and answer.samples and reference.samples:
-        words |= _compared(answer, reference)
-    return words
+    return words | _compared(comparison)
 
 
 def change_words(before: float, after: float) -> str:
@@ -112,24 +109,15 @@ def change_words(before: float, after: float) -> str:
     return text.replace("-", "−")
 
 
-def _compared(answer: Answer, reference: Answer) -> dict[str, str]:
-    """Differences with their intervals, common unknowns drawn once for both."""
-    try:
-        from ..case.compare import compare
-    except ImportError:
-        return {}
-    try:
-        compared = compare(answer, reference)
-    except PulsekitError:
-        return {}
+def _compared(comparison: Any) -> dict[str, str]:
+    """Ratios with their intervals as changes in per cent; common unknowns were drawn once for both."""
     words = {}
-    for finding in getattr(compared, "findings", compared):
-        name = finding.name.removeprefix("ratio_of_")
-        if finding.name == name or finding.value is None or finding.low is None or finding.high is None:
+    for finding in () if comparison is None else comparison.findings:
+        if not finding.name.startswith("ratio_of_") or finding.value is None or finding.low is None or finding.high is None:
             continue
-        values = [round(100 * (number - 1), 1) for number in (finding.value, finding.low, finding.high)]
+        values = [round(100 * (number - 1), 1) + 0.0 for number in (finding.value, finding.low, finding.high)]
         if all(abs(number) < 1e4 for number in values):
             places = decimals_of(*values)
             value, low, high = (number_text(number, places) for number in values)
-            words[name] = f"{value} % ({low} to {high})"
+            words[finding.name.removeprefix("ratio_of_")] = f"{value} % ({low} to {high})"
     return words

@@ -12,6 +12,7 @@ from typing import Any
 
 from ..case import Answer, Case, Workspace, analyse, load_case
 from ..case.case import make_case
+from ..case.compare import compare
 from ..case.schema import key_of, sections_of
 from ..errors import CaseError, MissingColumnError, MissingFileError, PulsekitError, RecordingError, SignalError, StoppedError
 from .fields import joined, label_of, split, value_of
@@ -35,6 +36,8 @@ class DeskState:
         What can be shown of a recording before the case can be answered.
     reference : Answer or None
         The pinned answer.
+    comparison : Comparison or None
+        Changes against it with their intervals, once they are computed.
     full : bool
         Whether intervals, bands and shares belong to the case as it stands.
     refused : dict
@@ -57,6 +60,7 @@ class DeskState:
         self.answer: Answer | None = None
         self.glimpse: Any = None
         self.reference: Answer | None = None
+        self.comparison: Any = None
         self.full = False
         self.refused: dict[str, tuple[str, str]] = {}
         self.fault: tuple[str, str] | None = None
@@ -238,6 +242,7 @@ class DeskState:
             if serial != self.serial:
                 return False
             self.answer, self.full, self.fault, self.glimpse = answer, full, None, None
+            self.comparison = None
         return True
 
     def _refuse(self, problem: PulsekitError, glimpse: Any) -> None:
@@ -266,12 +271,29 @@ class DeskState:
         if self.answer is None:
             self.notice = "There is no answer to pin yet."
             return False
-        self.reference = self.answer
+        self.reference, self.comparison = self.answer, None
         return True
 
     def unpin(self) -> None:
         """Drop the reference."""
-        self.reference = None
+        self.reference = self.comparison = None
+
+    def compare_now(self) -> bool:
+        """Give the changes against the reference their intervals: givens in common are drawn once for both."""
+        answer, reference, serial = self.answer, self.reference, self.serial
+        if answer is None or reference is None or answer.case == reference.case or not self.full:
+            return True
+        try:
+            if not reference.samples:
+                reference = analyse(reference.case, workspace=self.workspace)
+            comparison = compare(answer, reference, workspace=self.workspace)
+        except PulsekitError as problem:
+            self.notice = str(problem)
+            return True
+        with self.lock:
+            if serial == self.serial and self.reference is not None:
+                self.reference, self.comparison = reference, comparison
+        return True
 
     # Cycles
 

@@ -33,7 +33,12 @@ def _label(answer: Any, name: str, dimension: str) -> str:
 
 
 def _along(answer: Any) -> Axis:
-    return Axis(label=_label(answer, "Position from the source", "length"), low=0.0, high=float(shown(answer, answer.response.line.length, "length")), link="position")
+    return Axis(
+        label=_label(answer, "Position from the source", "length"),
+        low=0.0,
+        high=float(shown(answer, answer.response.line.length, "length")),
+        link="position",
+    )
 
 
 def _places(answer: Any) -> Any:
@@ -56,7 +61,14 @@ def envelope_panel(answer: Any, reference: Any = None) -> Panel:
     band = answer.bands.get("envelope") if answer.bands else None
     if band is not None:
         spots = shown(answer, np.asarray(answer.extras["positions"]), "length")
-        series.append(Series(kind="band", role="gradient", name="95 %", arrays=[spots, shown(answer, band.low, "pressure"), shown(answer, band.high, "pressure")]))
+        series.append(
+            Series(
+                kind="band",
+                role="gradient",
+                name="95 %",
+                arrays=[spots, shown(answer, band.low, "pressure"), shown(answer, band.high, "pressure")],
+            )
+        )
     series.append(
         Series(kind="line", role="gradient", name="computed", reading=True, arrays=[at, shown(answer, answer.response.envelope(places), "pressure")])
     )  # fmt: skip
@@ -65,7 +77,13 @@ def envelope_panel(answer: Any, reference: Any = None) -> Panel:
         spots = [shown(answer, station.position, "length") for station in stations]
         sizes = [shown(answer, _swing(station.harmonics), "pressure") for station in stations]
         series.append(Series(kind="dots", role="measured", name="measured, mean turn", arrays=[spots, sizes]))
-    return Panel(id="envelope", title=NAMES["envelope"], x=_along(answer), y=Axis(label=_label(answer, "Pressure p-p", "pressure"), low=None, zero=True), series=series)
+    return Panel(
+        id="envelope",
+        title=NAMES["envelope"],
+        x=_along(answer),
+        y=Axis(label=_label(answer, "Pressure p-p", "pressure"), low=None, zero=True),
+        series=series,
+    )
 
 
 def _swing(harmonics: Any) -> float:
@@ -102,7 +120,14 @@ def drawing_panel(answer: Any, selected: int = 0) -> Panel:
     ]
     stations = answer.extras.get("stations") or ()
     if stations:
-        series.append(Series(kind="dots", role="measured", name="stations", arrays=[[shown(answer, s.position, "length") for s in stations], [0.0] * len(stations)]))
+        series.append(
+            Series(
+                kind="dots",
+                role="measured",
+                name="stations",
+                arrays=[[shown(answer, s.position, "length") for s in stations], [0.0] * len(stations)],
+            )
+        )
     return Panel(
         id="drawing", title=NAMES["drawing"], click="select_element", note=f"source at 0, {line.end.kind} end; click an element to select it", x=_along(answer),
         y=Axis(label="Bore", low=-1.6, high=1.6, ticks={0.0: " "}), series=series,
@@ -117,10 +142,19 @@ def orders_panel(answer: Any, reference: Any = None) -> Panel:
     response = answer.response
     orders = np.arange(1, response.count + 1)
     sizes = 2 * np.abs(response.pressures([0.0])[0])
-    series = [Series(kind="stems", role="gradient", name="computed at 0 m", arrays=[orders, shown(answer, sizes, "pressure"), np.full(orders.size, np.nan)])]
+    series = [
+        Series(
+            kind="stems",
+            role="gradient",
+            name="computed at 0 m",
+            arrays=[orders, shown(answer, sizes, "pressure"), np.full(orders.size, np.nan)],
+        )
+    ]
     for station in answer.extras.get("stations") or ():
         tall = shown(answer, station.harmonics.peak_to_peak[1:], "pressure")
-        series.append(Series(kind="dots", role="measured", name=f"measured, {station.name}", arrays=[np.arange(1, np.size(tall) + 1), tall]))
+        series.append(
+            Series(kind="dots", role="measured", name=f"measured, {station.name}", arrays=[np.arange(1, np.size(tall) + 1), tall])
+        )
     rule = answer.extras.get("rule")
     if rule is not None:
         bore = 2 * next(element.radius for element in response.line.elements if element.length > 0)
@@ -129,7 +163,15 @@ def orders_panel(answer: Any, reference: Any = None) -> Panel:
         )  # fmt: skip
     if reference is not None and reference.response is not None:
         other = 2 * np.abs(reference.response.pressures([0.0])[0])
-        series.append(Series(kind="dots", role="gradient", pale=True, name="pinned", arrays=[np.arange(1, other.size + 1), shown(answer, other, "pressure")]))
+        series.append(
+            Series(
+                kind="dots",
+                role="gradient",
+                pale=True,
+                name="pinned",
+                arrays=[np.arange(1, other.size + 1), shown(answer, other, "pressure")],
+            )
+        )
     return Panel(
         id="orders", title=NAMES["orders"], note=f"order 1 is {response.frequency:.4g} Hz, {60 * response.frequency:.4g} rpm",
         x=Axis(label="Order of the shaft", low=0.4, high=response.count + 0.6), y=Axis(label=_label(answer, "Pressure p-p", "pressure"), zero=True), series=series,
@@ -154,7 +196,11 @@ def turn_panel(answer: Any) -> tuple[Panel, Series]:
     time = np.linspace(0, turn, 257)
     for station in stations:
         course = station.harmonics.evaluate(time / 1e3) - station.harmonics.mean
-        series.append(Series(kind="line", role="measured", thin=True, name=f"measured, {station.name}", arrays=[time, shown(answer, course, "pressure")]))
+        series.append(
+            Series(
+                kind="line", role="measured", thin=True, name=f"measured, {station.name}", arrays=[time, shown(answer, course, "pressure")]
+            )
+        )
     series.append(Series(kind="slice", role="gradient", name="computed at the cursor", options={"of": ["field", 0], "link": "position"}))
     highest = float(np.abs(closed).max()) or 1.0
     return Panel(
@@ -203,7 +249,9 @@ def impedance_panel(answer: Any, reference: Any = None) -> Panel:
     series = [Series(kind="line", role="flow", name="|Z|", reading=True, arrays=[hertz, own])]
     if reference is not None and reference.response is not None:
         other = reference.response
-        series.insert(0, Series(kind="line", role="flow", pale=True, name="pinned", arrays=[hertz, level(other.line, other.medium, other.values)]))
+        series.insert(
+            0, Series(kind="line", role="flow", pale=True, name="pinned", arrays=[hertz, level(other.line, other.medium, other.values)])
+        )
     found = answer.extras.get("resonances")
     if found:
         spots = [one.frequency for one in found]
@@ -216,7 +264,9 @@ def impedance_panel(answer: Any, reference: Any = None) -> Panel:
 def recording_panel(answer: Any) -> Panel | None:
     """The recordings over time with the turns of the shaft."""
     stations = answer.extras.get("stations") or ()
-    channels = [(station.name, station.signal) for station in stations] or ([(answer.signal.name, answer.signal)] if answer.signal is not None else [])
+    channels = [(station.name, station.signal) for station in stations] or (
+        [(answer.signal.name, answer.signal)] if answer.signal is not None else []
+    )
     if not channels or answer.cycles is None:
         return None
     edges = np.asarray(answer.cycles.all_onsets)

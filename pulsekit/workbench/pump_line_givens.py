@@ -113,10 +113,18 @@ def _pump(state: PumpLineState) -> list[dict[str, Any]]:
 
 def _liquid(state: PumpLineState) -> list[dict[str, Any]]:
     kind = str(state.case.get("fluid.kind") or "")
-    items = [choice_field(state, "fluid.kind", "Kind", options=[[name, "density and viscosity" if name == "given" else name] for name in _LIQUIDS])]
+    items = [
+        choice_field(
+            state, "fluid.kind", "Kind", options=[[name, "density and viscosity" if name == "given" else name] for name in _LIQUIDS]
+        )
+    ]
     for name in _LIQUIDS.get(kind, ()):
         key = f"fluid.{name}"
-        items.append(text_field(state, key, "ISO grade", hint="46") if name == "grade" else quantity_field(state, key, hint=_HINTS.get(name, ""), slider=name == "temperature"))
+        items.append(
+            text_field(state, key, "ISO grade", hint="46")
+            if name == "grade"
+            else quantity_field(state, key, hint=_HINTS.get(name, ""), slider=name == "temperature")
+        )
     if kind:
         items.append(quantity_field(state, "fluid.gas_fraction_at_atmosphere", "Free gas, as laboratories quote it", hint="1 %"))
     return items
@@ -136,7 +144,11 @@ def _line(state: PumpLineState) -> list[dict[str, Any]]:
             if name in _PLAIN:
                 items.append(text_field(state, dotted, hint=_HINTS.get(name, "")))
             else:
-                items.append(quantity_field(state, dotted, hint=_HINTS.get(name, ""), slider=name in ("length", "nominal_volume", "gas_volume", "volume")))
+                items.append(
+                    quantity_field(
+                        state, dotted, hint=_HINTS.get(name, ""), slider=name in ("length", "nominal_volume", "gas_volume", "volume")
+                    )
+                )
         if kind == "side branch":
             items += _branch(state, key, table)
         error = state.errors.get(key, "")
@@ -187,7 +199,11 @@ def _branch(state: PumpLineState, key: str, table: dict[str, Any]) -> list[dict[
         kind = str(inner.get("kind") or "pipe")
         for name in _ELEMENT.get(kind, ()):
             if _wanted(inner, kind, name) and name not in _PLAIN and (inner.get(name) is not None or name in ("length", "radius")):
-                items.append(quantity_field(state, f"{key}.element.{index}.{name}", f"Branch {kind}: {name.replace('_', ' ')}", hint=_HINTS.get(name, "")))
+                items.append(
+                    quantity_field(
+                        state, f"{key}.element.{index}.{name}", f"Branch {kind}: {name.replace('_', ' ')}", hint=_HINTS.get(name, "")
+                    )
+                )
     items.append(choice_field(state, f"{key}.end.kind", "End of the branch"))
     return items
 
@@ -215,7 +231,16 @@ def _help(state: PumpLineState) -> list[dict[str, Any]]:
     notes = ["Each change by itself, driven by the same flow at the source. Estimates to choose from, not designs; change anything only after isolating and bleeding "
              "both liquid and gas side."]  # fmt: skip
     if not state.help_is_current:
-        return [{"type": "table", "key": "help", "label": "What helps", "head": ["Change", "Pulsation becomes"], "rows": [["being computed", ""]], "notes": notes}]
+        return [
+            {
+                "type": "table",
+                "key": "help",
+                "label": "What helps",
+                "head": ["Change", "Pulsation becomes"],
+                "rows": [["being computed", ""]],
+                "notes": notes,
+            }
+        ]
     rows = [[effect.name, effect.because or f"{100 * (effect.ratio or 0):.0f} % of what it is"] for effect in state.helped]
     keeps = [
         (f"keep {place + 1}", f"Keep the change: {effect.name}", {"do": "keep_change", "name": effect.name})

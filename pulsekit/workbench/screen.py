@@ -116,7 +116,9 @@ class Screen(anywidget.AnyWidget):
         with state.lock, self.hold_sync():
             self.scene, self.numbers = pack_panels(self.panels_now())
             self.givens = self.givens_now()
-            self.answer = answer_rows(state.answer, state.reference, full=state.full, lead=self.lead, cautions=self.cautions)
+            self.answer = answer_rows(
+                state.answer, state.reference, full=state.full, lead=self.lead, cautions=self.cautions, comparison=state.comparison
+            )
             self.status = self._status()
 
     def _status(self) -> dict[str, Any]:
@@ -180,6 +182,7 @@ class Screen(anywidget.AnyWidget):
         elif do in ("pin", "unpin"):
             getattr(state, do)()
             self.push()
+            self.refine_later()
         elif do == "set" and str(asked["key"]).startswith("recording.") and self._is_large():
             if state.change(str(asked["key"]), asked["text"]):
                 self._slowly("reading", state.answer_now)
@@ -213,7 +216,7 @@ class Screen(anywidget.AnyWidget):
     def _refine(self, stop: Callable[[], bool]) -> None:
         def work() -> None:
             self._tell("computing intervals")
-            done = self.state.refine(stop=stop)
+            done = self.state.refine(stop=stop) and self.state.compare_now()
             if not stop():
                 self._busy, self._progress = "", None
                 self.push() if done else self._tell("")

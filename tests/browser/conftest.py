@@ -49,7 +49,7 @@ def voila(desk: Path) -> Iterator[str]:
         yield address
 
 
-@pytest.fixture()
+@pytest.fixture
 def open_page(chromium_browser: Any) -> Iterator[Any]:
     """Function that opens an address; at the end the console must hold none of our errors."""
     pages, complaints = [], []

@@ -45,7 +45,7 @@ def shown_findings(page) -> dict[str, tuple[str, str]]:
     return {name: (value, interval) for name, value, interval in rows}
 
 
-@pytest.fixture()
+@pytest.fixture
 def page(open_page, voila):
     opened = open_page(f"{voila}/voila/render/case.ipynb")
     ready(opened)

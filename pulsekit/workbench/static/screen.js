@@ -67,9 +67,9 @@ class Bench {
   // As tall as the window leaves room for, so that every picture is in view without scrolling.
   fitHeight() {
     const lab = document.querySelector(".jp-LabShell, .jp-NotebookShell");
-    const outer = lab ? this.root.closest(".jp-WindowedPanel-outer, .jp-Notebook, .jp-NotebookPanel-notebook") : null;
+    const outer = lab ? this.root.closest(".jp-WindowedPanel-outer, .jp-NotebookPanel-notebook") : null;
     const above = this.root.getBoundingClientRect().top + window.scrollY;
-    const room = outer ? outer.getBoundingClientRect().height - 12 : window.innerHeight - Math.min(above, 40) - 4;
+    const room = outer ? outer.getBoundingClientRect().height - 12 : window.innerHeight - Math.min(above, 40) - 8;
     const width = this.root.clientWidth;
     if (width) {
       this.root.classList.toggle("narrow", width < 1330);
