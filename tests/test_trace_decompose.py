@@ -6,14 +6,16 @@ import numpy as np
 import pytest
 from hypothesis import given, settings
 from hypothesis import strategies as st
+from scipy.stats import f as fisher
 from scipy.stats import t as student
 
 import pulsekit as pk
 from pulsekit.errors import InputError
 from pulsekit.trace import Signal, cycle_coefficients, decompose, find_cycles
 from pulsekit.trace import decompose as public_decompose
-from pulsekit.trace.decompose import _by_fft, _fit
-from pulsekit.trace.decompose_spread import as_complex, as_real
+from pulsekit.trace.decompose import _by_fft
+from pulsekit.trace.decompose_spread import _limit, as_complex, as_real
+from pulsekit.trace.fitting import fit_harmonics, harmonic_basis
 
 TRUE = np.array([4.0, 2 - 1j, -0.8 + 0.6j, 0.3j, 0.0, 0.1])
 
@@ -47,10 +49,25 @@ def test_fft_and_least_squares_agree_to_rounding():
     each, cycles, count = 64, 5, 20
     phase = np.tile(np.arange(each) / each, cycles)
     values = wave(TRUE, phase) + rng.normal(size=phase.size)
-    fast, slow = _by_fft(values, each, cycles, count), _fit(phase, values, count, None)
+    fast, slow = _by_fft(values, each, cycles, count), fit_harmonics(phase, values, count)
     np.testing.assert_allclose(fast.vector, slow.vector, atol=1e-13 * np.abs(values).max())
     np.testing.assert_allclose(fast.residual, slow.residual, rtol=1e-12)
     np.testing.assert_allclose(fast.inverse, slow.inverse, atol=1e-15)
+
+
+def test_the_fit_by_sums_is_that_of_an_orthogonal_solution():
+    rng = np.random.default_rng(8)
+    phase = rng.uniform(0, 1, 300)
+    values = 50 + wave(TRUE, phase) + rng.normal(size=300)
+    weights = rng.uniform(0.1, 3, 300)
+    root = np.sqrt(weights)
+    basis = harmonic_basis(phase, 12) * root[:, None]
+    expected, *_ = np.linalg.lstsq(basis, values * root, rcond=None)
+    fit = fit_harmonics(phase, values, 12, weights)
+    # Rounding of values of 50; the condition is below 10.
+    np.testing.assert_allclose(fit.vector, expected, atol=1e-13)
+    np.testing.assert_allclose(fit.inverse, np.linalg.inv(basis.T @ basis), atol=1e-14)
+    np.testing.assert_allclose(fit.residual, np.sum((values * root - basis @ expected) ** 2), rtol=1e-12)
 
 
 def test_both_roads_of_the_public_call_agree():
@@ -144,6 +161,12 @@ def test_significant_harmonics_are_kept_and_noise_is_not(cycles):
     assert sum(count > 3 for count in counts) <= 19
     assert sum(count > 6 for count in counts) <= 6
     assert min(counts) == 3
+
+
+@pytest.mark.parametrize("freedom", [1, 2, 7.5, 22, 1e4])
+def test_the_limit_is_fishers(freedom):
+    for level in (0.2, 0.01, 1e-5):
+        assert _limit(level, freedom) == pytest.approx(fisher.isf(level, 2, freedom), rel=1e-9)
 
 
 def test_remarks_say_how_many_and_the_share_of_the_variance():

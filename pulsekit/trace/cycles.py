@@ -14,7 +14,7 @@ from ..errors import InputError, SignalError
 from ..quantities import to_si
 from .feet import as_well_by_one_period, locate_feet, refine_feet
 from .odd_cycles import odd_cycles
-from .periods import find_period, refine_period
+from .periods import find_period, period_misfit, refine_period
 from .signal import Signal
 
 __all__ = ["Cycles", "find_cycles"]
@@ -136,11 +136,14 @@ class Cycles:
         places = np.asarray(phase, dtype=float)
         time, values = self._good
         out = np.empty((self.count, places.size))
+        base = self.base_period
         for row, index in enumerate(self.kept):
             begin, end = self.edges[index], self.edges[index + 1]
-            length = self.base_period if self.align == "onset" else end - begin
+            length = base if self.align == "onset" else end - begin
             at = begin + places * length
-            out[row] = np.interp(at, time, values)
+            first, last = np.searchsorted(time, (at.min(initial=begin), at.max(initial=begin)))
+            near = slice(max(int(first) - 1, 0), int(last) + 1)
+            out[row] = np.interp(at, time[near], values[near])
             out[row, (at > end + 1e-9 * length) | (at > time[-1] + length * 0.02)] = np.nan
         return out
 
@@ -240,18 +243,19 @@ def _without_broken(cycles: Cycles) -> Cycles:
     if cycles.gap or cycles.count < 2:
         return cycles
     time, _ = cycles._good
-    step = float(np.median(np.diff(cycles.signal.time)))
     begins, ends = cycles.onsets, cycles.onsets + cycles.periods
-    expected = np.maximum(cycles.periods / step, 1.0)
-    share = (np.searchsorted(time, ends - 1e-9 * ends) - np.searchsorted(time, begins - 1e-9 * begins)) / expected
+    there = np.searchsorted(time, ends - 1e-9 * ends) - np.searchsorted(time, begins - 1e-9 * begins)
+    # Against the usual density of samples, so that uneven sampling is no fault.
+    usual = float(np.median(there / cycles.periods))
+    share = there / (usual * cycles.periods) if usual > 0 else np.ones(there.size)
     restarts = cycles.signal.time[[first for first, _ in cycles.signal.segments[1:]]]
-    for index, begin, end, there in zip(cycles.kept, begins, ends, share, strict=True):
+    for index, begin, end, part in zip(cycles.kept, begins, ends, share, strict=True):
         if cycles.count == 1:
             break
         if np.any((restarts > begin) & (restarts < end)):
             cycles = cycles.without([index], "the logger restarted within it")
-        elif there < _LEAST_SAMPLES:
-            cycles = cycles.without([index], f"{100 * (1 - there):.0f} % of its samples are missing or were left out")
+        elif part < _LEAST_SAMPLES:
+            cycles = cycles.without([index], f"{100 * (1 - part):.0f} % of its samples are missing or were left out")
     return cycles
 
 
@@ -352,10 +356,11 @@ def _found(signal: Signal) -> Cycles:
     """Period from the signal; one for all cycles where that describes the record as well as each cycle's own foot."""
     rough = find_period(signal)
     feet = refine_feet(signal, locate_feet(signal, rough))
-    steady = float(np.median(np.diff(feet))) if feet.size >= 3 else rough
     if len(signal.segments) == 1:
-        period = refine_period(signal, _line_through(feet, steady) if feet.size >= 3 else rough)
-        if feet.size < 3 or as_well_by_one_period(signal, feet, period):
+        starts = [rough] if feet.size < 3 else [rough, _line_through(feet, float(np.median(np.diff(feet))))]
+        period = min((refine_period(signal, start) for start in starts), key=lambda trial: period_misfit(signal, trial))
+        # Three cycles cannot tell a drifting pace from feet that are badly found.
+        if feet.size < 4 or as_well_by_one_period(signal, feet, period):
             return _from_period(signal, period, "The period was found in the signal")
     if feet.size < 2:
         raise SignalError("fewer than two onsets were found; give period or onsets")
@@ -364,9 +369,7 @@ def _found(signal: Signal) -> Cycles:
         f"Cycles were found in the signal: {feet.size - 1} between feet, {lengths.min():.4g} to {lengths.max():.4g} s long "
         f"(median {np.median(lengths):.4g} s); what lies before the first and after the last foot was not used."
     )
-    return Cycles(
-        signal=signal, edges=feet.astype(np.float64), kept=tuple(range(feet.size - 1)), uniform=False, remarks=(remark,)
-    )
+    return Cycles(signal=signal, edges=feet.astype(np.float64), kept=tuple(range(feet.size - 1)), uniform=False, remarks=(remark,))
 
 
 def _line_through(feet: NDArray[np.float64], period: float) -> float:

@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+import itertools
+
 import numpy as np
 from numpy.typing import NDArray
 
@@ -9,22 +11,13 @@ from ..errors import InputError, SignalError
 from ..quantities import from_si
 from .cycles import Cycles
 from .decompose_spread import Fit, as_complex, as_real, covariance_of, noise_of, significant_count
+from .fitting import cycle_course, fit_harmonics, harmonic_basis
 from .harmonics import Harmonics
 
 __all__ = ["cycle_coefficients", "cycle_course", "decompose", "most_harmonics"]
 
 _MOST = 60  # harmonics looked at when none are asked for
 _GAP_ERROR = 2.0  # greatest standard error of the curve in the gap of a gated cycle, in those of one sample
-
-
-def _basis(phase: NDArray[np.float64], count: int) -> NDArray[np.float64]:
-    """Columns of [1, cos, -sin, ...]: Re(X exp(i a)) = Re X cos a - Im X sin a."""
-    columns = np.empty((phase.size, 2 * count + 1))
-    columns[:, 0] = 1.0
-    angle = 2 * np.pi * phase[:, None] * np.arange(1, count + 1)
-    columns[:, 1::2] = np.cos(angle)
-    columns[:, 2::2] = -np.sin(angle)
-    return columns
 
 
 def _regular(cycles: Cycles, rows: NDArray[np.intp], owners: NDArray[np.intp]) -> int:
@@ -38,30 +31,13 @@ def _regular(cycles: Cycles, rows: NDArray[np.intp], owners: NDArray[np.intp]) -
     return each if whole and in_place and np.all(np.bincount(owners, minlength=cycles.count) == each) else 0
 
 
-def _fit(phase: NDArray[np.float64], values: NDArray[np.float64], count: int, weights: NDArray[np.float64] | None) -> Fit:
-    basis = _basis(phase, count)
-    root = None if weights is None else np.sqrt(weights)
-    design = basis if root is None else basis * root[:, None]
-    target = values if root is None else values * root
-    normal = design.T @ design
-    values_of = np.linalg.eigvalsh(normal)
-    if not values_of[0] > 1e-12 * values_of[-1]:
-        raise SignalError(f"{count} harmonics cannot be told apart with these samples; keep fewer (harmonics = {max(count // 2, 1)})")
-    inverse = np.linalg.inv(normal)
-    vector = inverse @ (design.T @ target)
-    # One step of refinement brings the normal equations to the accuracy of an orthogonal solution.
-    vector = vector + inverse @ (design.T @ (target - design @ vector))
-    residual = float(np.sum((target - design @ vector) ** 2))
-    return Fit(vector, np.asarray(inverse, dtype=np.float64), residual, values.size - 2 * count - 1, False)
-
-
 def _fit_below(
     phase: NDArray[np.float64], values: NDArray[np.float64], looked: int, least: int, weights: NDArray[np.float64] | None
 ) -> tuple[Fit, int]:
     """Fit ``looked`` harmonics, or as many fewer (not below ``least``) as the phases of the samples tell apart."""
     while True:
         try:
-            return _fit(phase, values, looked, weights), looked
+            return fit_harmonics(phase, values, looked, weights), looked
         except SignalError:
             if looked <= least:
                 raise
@@ -82,12 +58,12 @@ def most_harmonics(cycles: Cycles) -> int:
     most = min(most, (rows.size - 2) // 2)
     across = np.linspace(1 - cycles.gap, 1, 21)
     while most > 1:
-        basis = _basis(phase, most)
+        basis = harmonic_basis(phase, most)
         try:
             inverse = np.linalg.inv(basis.T @ basis)
         except np.linalg.LinAlgError:
             inverse = None
-        there = _basis(across, most)
+        there = harmonic_basis(across, most)
         if inverse is not None and float(np.einsum("ij,jk,ik->i", there, inverse, there).max()) <= _GAP_ERROR**2:
             break
         most -= 1
@@ -109,17 +85,18 @@ def cycle_coefficients(cycles: Cycles, count: int, mean: NDArray[np.complex128] 
         spectrum = np.fft.rfft(values.reshape(cycles.count, each), axis=1)[:, : count + 1] / each
         spectrum[:, 1:] *= 2
         return np.asarray(spectrum)
-    base = as_complex(_fit(phase, values, count, None).vector) if mean is None else mean
-    turn = np.exp(-2j * np.pi * phase[:, None] * np.arange(count + 1))
-    apart = values - (base * turn.conj()).real.sum(axis=1)
+    base = as_complex(fit_harmonics(phase, values, count, None).vector) if mean is None else mean
+    apart = values - cycle_course(base, phase)
+    order = np.arange(count + 1)
     out = np.empty((cycles.count, count + 1), dtype=complex)
-    for index in range(cycles.count):
-        mine = np.flatnonzero(owners == index)
-        if mine.size == 0:
+    bounds = np.searchsorted(owners, np.arange(cycles.count + 1))
+    for index, (first, last) in enumerate(itertools.pairwise(bounds)):
+        if first == last:
             out[index] = base
             continue
+        mine = slice(first, last)
         share = _shares_of_phase(phase[mine])
-        difference = (apart[mine] * share) @ turn[mine]
+        difference = (apart[mine] * share) @ np.exp(-2j * np.pi * np.multiply.outer(phase[mine], order))
         difference[1:] *= 2
         difference[0] = difference[0].real
         out[index] = base + difference / np.sqrt(min(float(share.sum()), 1.0))
@@ -184,7 +161,8 @@ def decompose(cycles: Cycles, count: int | None = None, *, weights: NDArray[np.f
             f"harmonics = {count} must be a whole number from 0 to {most}, the most that {rows.size / cycles.count:.4g} samples per cycle hold",
             name="harmonics", value=count, allowed=f"0 to {most}",
         )  # fmt: skip
-    looked = min(most, _MOST) if count is None else min(most, max(int(count) + max(int(count), 8), 12))
+    # Next to the Nyquist limit a sine falls on its own zeros at nearly every sample.
+    looked = min(most, max(int(0.9 * most), 1), _MOST) if count is None else min(most, max(int(count) + max(int(count), 8), 12))
     if count is not None:
         looked = max(looked, int(count))
     sample_weights = None if weights is None else np.asarray(weights, dtype=float)[rows]
@@ -197,7 +175,7 @@ def decompose(cycles: Cycles, count: int | None = None, *, weights: NDArray[np.f
     noise, freedom = noise_of(fit, own, looked)
     kept = int(count) if count is not None else significant_count(fit, noise, freedom, looked, cycles.count)
     if not each and kept < looked:
-        fit = _fit(phase, values, kept, sample_weights)
+        fit = fit_harmonics(phase, values, kept, sample_weights)
     coefficients = as_complex(fit.vector[: 2 * kept + 1])
     extra: list[str] = []
     if cycles.align == "onset":
@@ -261,12 +239,3 @@ def _in_unit(value: float, cycles: Cycles) -> str:
     if not unit or cycles.signal.dimension is None:
         return f"{value:.4g}"
     return f"{from_si(value, unit):.4g} {unit}"
-
-
-def cycle_course(coefficients: NDArray[np.complex128], phase: NDArray[np.float64]) -> NDArray[np.float64]:
-    """Re sum X_n exp(2 pi i n phase) at phases in cycles, of any shape."""
-    turn = np.exp(2j * np.pi * np.asarray(phase))
-    total = np.full(turn.shape, complex(coefficients[-1]))
-    for value in coefficients[-2::-1]:
-        total = total * turn + value
-    return np.asarray(total.real)

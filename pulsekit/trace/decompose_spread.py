@@ -6,7 +6,6 @@ from dataclasses import dataclass
 
 import numpy as np
 from numpy.typing import NDArray
-from scipy.stats import f as fisher
 
 __all__ = ["Fit", "as_complex", "as_real", "covariance_of", "noise_of", "significant_count"]
 
@@ -73,6 +72,11 @@ def noise_of(fit: Fit, own: NDArray[np.complex128], looked: int) -> tuple[NDArra
     return level, float(max(fit.freedom, 1))
 
 
+def _limit(level: float, freedom: float) -> float:
+    """Value that Fisher's F with 2 and ``freedom`` degrees exceeds with probability ``level``: P(F > x) = (1 + 2 x/freedom)^(-freedom/2)."""
+    return float(0.5 * freedom * np.expm1(-2 / freedom * np.log(level)))
+
+
 def significant_count(fit: Fit, noise: NDArray[np.float64], freedom: float, looked: int, cycles: int) -> int:
     """The highest harmonic that stands out of the noise, and those next to it that follow on; at least 1 if there is any.
 
@@ -83,10 +87,10 @@ def significant_count(fit: Fit, noise: NDArray[np.float64], freedom: float, look
         return 0
     power = np.abs(as_complex(fit.vector)[1:]) ** 2
     real = power > (_FLOOR**2) * power.max(initial=0.0)
-    limit = fisher.isf((_LEVEL if cycles > 1 else _LEVEL_ONE) / looked, 2, freedom)
+    limit = _limit((_LEVEL if cycles > 1 else _LEVEL_ONE) / looked, freedom)
     found = np.flatnonzero((power > limit * noise) & real)
     kept = int(found[-1]) + 1 if found.size else 1
-    follows = (power > fisher.isf(_LEVEL_NEXT, 2, freedom) * noise) & real
+    follows = (power > _limit(_LEVEL_NEXT, freedom) * noise) & real
     while found.size and kept < looked and follows[kept]:
         kept += 1
     return kept

@@ -107,4 +107,5 @@ def as_well_by_one_period(signal: Signal, feet: NDArray[np.float64], period: flo
         folded = np.interp(edges[:-1, None] + phase * float(np.median(np.diff(edges))), time, values)
         return float(np.median(np.sqrt(np.mean((folded - np.median(folded, axis=0)) ** 2, axis=1))))
 
-    return misfit(even) <= 1.1 * misfit(feet) + _ALIKE * float(np.ptp(values))
+    # Few cycles: their own feet fit better by chance.
+    return misfit(even) <= (1 + max(0.1, 1 / number)) * misfit(feet) + _ALIKE * float(np.ptp(values))

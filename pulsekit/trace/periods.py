@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import numpy as np
 from numpy.typing import NDArray
+from scipy.fft import next_fast_len
 
 from ..errors import SignalError
 from .signal import Signal
@@ -11,6 +12,8 @@ from .signal import Signal
 __all__ = ["evenly", "find_period", "refine_period"]
 
 _LEAST_CORRELATION = 0.3
+_DRIFT = 0.2  # share of the variance from which a straight drift is taken off before looking
+_SHORT = 20  # cycles up to which a period is looked for in a wide neighbourhood
 _MOST_SAMPLES = 100_000  # above which blocks of samples fix the period finely enough
 
 
@@ -30,9 +33,10 @@ def find_period(signal: Signal) -> float:
     SignalError
         If the signal does not repeat itself within the record.
     """
-    _, values, step = evenly(signal)
+    time, values, step = evenly(signal)
     if not np.ptp(values) > 0:
         raise SignalError(f"signal {signal.name!r} does not vary; there is no period to find")
+    values = _level(time, values)
     usable, peaks = _correlation_peaks(values - values.mean())
     # Cycles that vary in length blur a narrow peak: seen through a window of an eighth of the shortest candidate, the wave is broad.
     width = int(peaks[0] / 8)
@@ -54,9 +58,10 @@ def _correlation_peaks(centred: NDArray[np.float64]) -> tuple[NDArray[np.float64
     At each lag it is divided by the energies of the two parts that meet, so that it never exceeds 1 however short they are.
     """
     size = centred.size
-    spectrum = np.fft.rfft(centred, n=2 * size)
+    padded = next_fast_len(2 * size, real=True)
+    spectrum = np.fft.rfft(centred, n=padded)
     most = max(int(size / 1.4), 4)
-    raw = np.fft.irfft(spectrum.real**2 + spectrum.imag**2)[:most]
+    raw = np.fft.irfft(spectrum.real**2 + spectrum.imag**2, n=padded)[:most]
     energy = np.concatenate([[0.0], np.cumsum(centred**2)])
     lags = np.arange(most)
     early, late = energy[size - lags], energy[-1] - energy[lags]
@@ -79,20 +84,42 @@ def _correlation_peaks(centred: NDArray[np.float64]) -> tuple[NDArray[np.float64
 def refine_period(signal: Signal, period: float) -> float:
     """Return the period for which few harmonics leave the least residual, far below one sample. [s]
 
-    The start must be right to about a twentieth of a cycle over the record.
+    The start must be right to 5 % in a short record, and to a twentieth of a cycle over the whole of a long one.
     """
+    fine, coarse, count, number = _prepared(signal, period)
+    narrow = 0.5 / (number * count)
+    reach = max(narrow, min(0.05, 0.6 / number)) if number <= _SHORT else narrow
+    grid = period * (1 + np.linspace(-reach, reach, max(13, 2 * int(reach / narrow * 4) + 1)))
+    best = float(grid[int(np.argmin([_least_squares(coarse, trial, count)[0] for trial in grid]))])
+    low, high = best - 1.5 * narrow * period, best + 1.5 * narrow * period
+    best = _descended(coarse, best, count, low, high)
+    if coarse[0].size < fine[0].size <= _MOST_SAMPLES:
+        best = _descended(fine, best, count, low, high)
+    return best
+
+
+def period_misfit(signal: Signal, period: float) -> float:
+    """Residual sum of squares that few harmonics of a period leave. [SI squared]"""
+    _, coarse, count, _ = _prepared(signal, period)
+    return _least_squares(coarse, period, count)[0]
+
+
+def _prepared(signal: Signal, period: float) -> tuple[_Samples, _Samples, int, float]:
+    """Good samples, the same in blocks, how many harmonics to fit, and cycles in the record."""
     good = np.ones(len(signal), dtype=bool) if signal.weights is None else signal.weights > 0
-    time, values = signal.time[good] - signal.time[0], signal.values[good]
+    time, values = signal.time[good] - signal.time[0], _level(signal.time[good], signal.values[good])
     coarse = _blocks(time, values, int(period / float(np.median(np.diff(signal.time))) / 48))
     number = max(float(time[-1]) / period, 1.0)
-    count = int(max(1, min(8, (period / float(np.median(np.diff(coarse[0]))) - 1) // 2)))
-    reach = 0.5 / (number * count)
-    grid = period * (1 + np.linspace(-reach, reach, 13))
-    best = float(grid[int(np.argmin([_least_squares(coarse, trial, count)[0] for trial in grid]))])
-    best = _descended(coarse, best, count, float(grid[0]), float(grid[-1]))
-    if coarse[0].size < time.size <= _MOST_SAMPLES:
-        best = _descended((time, values, np.ones(time.size)), best, count, float(grid[0]), float(grid[-1]))
-    return best
+    count = int(max(1, min(8, (period / float(np.median(np.diff(coarse[0]))) - 1) // 2, (coarse[0].size - 2) // 4)))
+    return (time, values, np.ones(time.size)), coarse, count, number
+
+
+def _level(time: NDArray[np.float64], values: NDArray[np.float64]) -> NDArray[np.float64]:
+    """The values without a straight drift, where that is a large part of what they vary; for looking only."""
+    middle = time - time.mean()
+    slope = float(middle @ values / (middle @ middle))
+    straight = slope * middle
+    return values - straight if np.var(straight) > _DRIFT * np.var(values) else values
 
 
 _Samples = tuple[NDArray[np.float64], NDArray[np.float64], NDArray[np.float64]]

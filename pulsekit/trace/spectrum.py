@@ -8,7 +8,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from .cycles import Cycles
-from .decompose import cycle_course
+from .fitting import cycle_course
 from .harmonics import Harmonics
 
 __all__ = ["Line", "Unlocked", "unlocked_part"]
