@@ -413,3 +413,8 @@ def test_curves_as_a_labelled_dataset(tmp_path, truth):
     np.testing.assert_array_equal(dataset["flow_rate"], answer.flow.flow_rate.evaluate(dataset["time"].values))
     np.testing.assert_allclose(dataset["velocity"].isel(radius=-1), 0.0, atol=1e-15)
     assert bool((dataset["wall_shear_stress_low"] <= dataset["wall_shear_stress_high"]).all())
+
+
+def test_a_device_in_the_flow_brings_its_caution(tmp_path, truth):
+    answer = nominal(flow_case(tmp_path, truth, tube=TUBE | {"device": "cannula"}))
+    assert any("cannula" in remark and "no basis for treatment" in remark for remark in answer.remarks)

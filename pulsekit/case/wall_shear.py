@@ -112,11 +112,17 @@ def _remarks(measurement: Measurement, flow: TubeFlow, fluid: Any) -> list[str]:
 
 
 def _signal_remarks(case: Case, measurement: Measurement) -> list[str]:
-    """What the course of the signal itself warns of."""
+    """What the course of the signal, and a device in the flow, warn of."""
+    rows = []
+    if device := case.get("tube.device"):
+        rows.append(
+            f"In the flow: {device}. The wall shear holds for a long straight tube only; at its inlets, tips, side holes, bends and narrowings it can be "
+            "many times higher. No evidence of absence of blood damage or clotting, and no basis for treatment or release."
+        )
     if measurement.gathered.dimension != "velocity" or case.get("recording.forward"):
-        return []
+        return rows
     words = rectified_words(measurement.gathered.signal, measurement.cycles)
-    return [words] if words else []
+    return [*rows, words] if words else rows
 
 
 def other_alignment(case: Case, measurement: Measurement, findings: Any, workspace: Workspace, tube: CircularTube, fluid: Any) -> list[str]:
