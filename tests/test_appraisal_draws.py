@@ -4,11 +4,11 @@ from __future__ import annotations
 
 import numpy as np
 import pytest
-from scipy import stats
+from scipy import optimize, stats
 
 from pulsekit.appraisal import Check, Checks, Finding, Findings, Input, draw_harmonics, draw_inputs, interval, interval_error, shares
 from pulsekit.appraisal.distributions import draw, is_positive, stream, wide_remarks
-from pulsekit.appraisal.harmonic_draws import covariance_root, multivariate_t, principal_steps
+from pulsekit.appraisal.harmonic_draws import covariance_root, lift_of_noise, mirrored_draws, multivariate_t, principal_steps
 from pulsekit.appraisal.intervals import one_digit_fixed
 from pulsekit.appraisal.reliance import TUBE_RELIANCE, depends_on, with_reliance
 from pulsekit.errors import InputError, UnitError
@@ -248,3 +248,19 @@ def test_a_flow_that_was_not_measured_rests_on_the_model():
     assert "laminar_mean" not in depends_on("mean_flow_rate", "flow_rate")
     assert "laminar_mean" in depends_on("mean_flow_rate", "centreline_velocity")
     assert "newtonian" in depends_on("peak_wall_shear_stress")
+
+
+def test_the_lift_of_noise_by_mirrored_draws():
+    series = Harmonics(frequency=1.0, coefficients=[0.2, 3.0], covariance=np.diag([0.25, 0.01, 0.01]))
+    draws = mirrored_draws(series, 2000, np.random.default_rng(3))
+    assert draws.shape == (4000, 2)
+    # Linear in the coefficients: no lift at all, where plain draws would leave an error of 1.25 x 0.5/sqrt(2000) = 0.014.
+    assert lift_of_noise(draws[:, 0].real, 0.2) == 0.0
+    # Folded normal |0.2 + 0.5 z|: its median m solves Phi((m - 0.2)/0.5) - Phi((-m - 0.2)/0.5) = 1/2, m = 0.365 (computed with scipy).
+    from scipy import optimize, stats
+
+    median = optimize.brentq(lambda m: stats.norm.cdf((m - 0.2) / 0.5) - stats.norm.cdf((-m - 0.2) / 0.5) - 0.5, 0.0, 2.0)
+    # 2,000 pairs know a median to about 1.25 x 0.3/sqrt(2000) = 0.008; three of these.
+    assert lift_of_noise(np.abs(draws[:, 0].real), 0.2) == pytest.approx(median - 0.2, abs=0.025)
+    assert lift_of_noise(np.array([1.0, np.inf]), 1.0) == 0.0
+    assert mirrored_draws(Harmonics(frequency=1.0, coefficients=[1.0]), 10, np.random.default_rng(3)).size == 0

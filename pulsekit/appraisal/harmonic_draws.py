@@ -8,7 +8,7 @@ from numpy.typing import NDArray
 from ..errors import InputError
 from ..trace.harmonics import Harmonics
 
-__all__ = ["covariance_root", "draw_harmonics", "multivariate_t", "principal_steps"]
+__all__ = ["covariance_root", "draw_harmonics", "lift_of_noise", "mirrored_draws", "multivariate_t", "principal_steps"]
 
 
 def covariance_root(covariance: NDArray[np.float64]) -> NDArray[np.float64]:
@@ -65,6 +65,33 @@ def draw_harmonics(harmonics: Harmonics, samples: int, rng: np.random.Generator)
         return np.broadcast_to(estimate, (samples, estimate.size))
     apart = multivariate_t(np.asarray(harmonics.covariance), harmonics.degrees_of_freedom, samples, rng)
     return _complex(_vector(estimate) + apart)
+
+
+def mirrored_draws(harmonics: Harmonics, pairs: int, rng: np.random.Generator) -> NDArray[np.complex128]:
+    """Draws of `draw_harmonics`, each with its mirror image about the estimate, shape (2 pairs, N + 1); empty without a covariance.
+
+    What is linear in the noise cancels exactly from their median, so that a few hundred pairs show what the curvature
+    of a calculation (an absolute value, a maximum) makes of the noise.
+    """
+    draws = draw_harmonics(harmonics, pairs, rng)
+    if draws.strides[0] == 0:
+        return np.empty((0, draws.shape[1]), dtype=complex)
+    return np.concatenate([draws, 2 * np.asarray(harmonics.coefficients) - draws])
+
+
+def lift_of_noise(samples: NDArray[np.float64], value: float) -> float:
+    """By how much noise lifts a finding: the median of samples from `mirrored_draws` less the value without noise; 0 where it is rounding.
+
+    Examples
+    --------
+    >>> noise = np.linspace(-1.0, 1.0, 201)
+    >>> lift_of_noise(3.0 + noise, 3.0), lift_of_noise(np.abs(noise), 0.0)
+    (0.0, 0.5)
+    """
+    if not np.isfinite(samples).all():
+        return 0.0
+    lift = float(np.median(samples)) - value
+    return lift if abs(lift) > 1e-6 * float(samples.std()) else 0.0
 
 
 def principal_steps(harmonics: Harmonics) -> NDArray[np.complex128]:

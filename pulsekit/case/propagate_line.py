@@ -10,7 +10,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from ..appraisal.distributions import Input, draw_inputs, is_positive, stream, wide_remarks
-from ..appraisal.harmonic_draws import draw_harmonics
+from ..appraisal.harmonic_draws import draw_harmonics, lift_of_noise, mirrored_draws
 from ..appraisal.intervals import SHARES_DEFINITION, interval, one_digit_fixed, shares
 from ..errors import StoppedError
 from ..fluids import sample_fluid
@@ -44,8 +44,15 @@ class LineModel:
         column = {key: np.asarray(value, float).reshape(-1, 1) for key, value in values.items()}
         fluid = {name: column[f"fluid.{name}"] for name in line.fluid.givens if f"fluid.{name}" in column}
         density, viscosity, modulus = sample_fluid(line.fluid, fluid)
-        changes: dict[str, Any] = {"density": density, "viscosity": viscosity, "bulk_modulus": modulus if modulus is not None else line.fluid.bulk_modulus}
-        for key, name in (("fluid.gas_fraction_at_atmosphere", "gas_at_atmosphere"), ("fluid.gas_fraction_at_line_pressure", "gas_at_line_pressure")):
+        changes: dict[str, Any] = {
+            "density": density,
+            "viscosity": viscosity,
+            "bulk_modulus": modulus if modulus is not None else line.fluid.bulk_modulus,
+        }
+        for key, name in (
+            ("fluid.gas_fraction_at_atmosphere", "gas_at_atmosphere"),
+            ("fluid.gas_fraction_at_line_pressure", "gas_at_line_pressure"),
+        ):
             if key in column:
                 changes[name] = column[key]
         if "operation.mean_pressure" in column:
@@ -157,25 +164,24 @@ def _bias(model: LineModel, raw: NDArray[np.complex128], seed: int) -> dict[str,
     """By how much noise in the recorded harmonics lifts peaks: the median of draws of the recording alone less the value without."""
     if raw.strides[0] == 0:
         return {}
-    draws = draw_harmonics(model.driven.source.harmonics, 400, stream(seed, "bias"))
+    draws = mirrored_draws(model.driven.source.harmonics, 200, stream(seed, "bias"))
+    if not draws.size:
+        return {}
     estimate = np.asarray(model.driven.source.harmonics.coefficients)[None, :]
     nominal = {key: entry.given.value for key, entry in model.inputs.items()}
     found = model({key: np.full(draws.shape[0], value) for key, value in nominal.items()}, draws).findings
     at = model({key: np.array([value]) for key, value in nominal.items()}, estimate).findings
-    shifts = {}
-    for name in _RECTIFIED:
-        if name in found:
-            shift = float(np.median(found[name]) - at[name][0])
-            if abs(shift) > 2.5 * 1.2533 * float(found[name].std()) / np.sqrt(draws.shape[0]):
-                shifts[name] = shift
-    return shifts
+    lifts = {name: lift_of_noise(found[name], float(at[name][0])) for name in _RECTIFIED if name in found}
+    return {name: lift for name, lift in lifts.items() if lift}
 
 
 def _bias_words(shifts: Mapping[str, float], cloud: Mapping[str, NDArray[np.float64]]) -> list[str]:
     shift = shifts.get("largest_peak_to_peak_pressure", 0.0)
     if abs(shift) < 0.1 * float(np.std(cloud["largest_peak_to_peak_pressure"])):
         return []
-    return [f"Noise in the recorded orders lifts the largest pulsation by about {shift:.3g} Pa; its interval was moved by twice that, the value stands as computed."]
+    return [
+        f"Noise in the recorded orders lifts the largest pulsation by about {shift:.3g} Pa; its interval was moved by twice that, the value stands as computed."
+    ]
 
 
 def _moved(ends: tuple[float | None, float | None], shift: float) -> tuple[float | None, float | None]:

@@ -11,7 +11,7 @@ from numpy.typing import NDArray
 
 from ..appraisal.distributions import Input, draw_inputs, is_positive, stream, wide_remarks
 from ..appraisal.finding import Checks, Finding, Findings
-from ..appraisal.harmonic_draws import draw_harmonics
+from ..appraisal.harmonic_draws import draw_harmonics, lift_of_noise, mirrored_draws
 from ..appraisal.intervals import SHARES_DEFINITION, interval, interval_error, shares
 from ..errors import InputError, StoppedError
 from ..fluids import sample_fluid
@@ -214,19 +214,13 @@ def _columns(values: Mapping[str, Any], uncertain: Mapping[str, Input], raw: NDA
 def _bias(
     model: _Model, nominal: Mapping[str, float], measurement: Measurement, at: Mapping[str, float], instants: int, seed: int
 ) -> dict[str, float]:
-    """By how much noise in the harmonics lifts rectified findings: the median of draws of the recording alone less the value without."""
-    draws = draw_harmonics(measurement.raw, 1500, stream(seed, "bias"))
-    if draws.strides[0] == 0:
+    """By how much noise in the harmonics lifts rectified findings, at the stated givens."""
+    draws = mirrored_draws(measurement.raw, 750, stream(seed, "bias"))
+    if not draws.size:
         return {}
     found = model({key: np.full(draws.shape[0], value) for key, value in nominal.items()}, draws, bands=False, instants=instants).findings
-    shifts = {}
-    for name in _RECTIFIED:
-        if name in found and np.isfinite(found[name]).all():
-            shift = float(np.median(found[name])) - at[name]
-            # A shift within the error of its own median is nothing that could be mended.
-            if abs(shift) > 2.5 * 1.2533 * float(found[name].std()) / np.sqrt(draws.shape[0]):
-                shifts[name] = shift
-    return shifts
+    lifts = {name: lift_of_noise(found[name], at[name]) for name in _RECTIFIED if name in found}
+    return {name: lift for name, lift in lifts.items() if lift}
 
 
 def _with_interval(
@@ -248,4 +242,6 @@ def _with_interval(
     if finding.name in _NOT_NEGATIVE:
         low = None if low is None else max(low, 0.0)
         high = None if high is None else max(high, 0.0)
+    if finding.name == "oscillatory_shear_index" and high is not None:
+        high = min(high, 0.5)
     return finding.replace(low=low, high=high, shares=parts.get(finding.name, {}))
