@@ -257,8 +257,6 @@ def test_the_lift_of_noise_by_mirrored_draws():
     # Linear in the coefficients: no lift at all, where plain draws would leave an error of 1.25 x 0.5/sqrt(2000) = 0.014.
     assert lift_of_noise(draws[:, 0].real, 0.2) == 0.0
     # Folded normal |0.2 + 0.5 z|: its median m solves Phi((m - 0.2)/0.5) - Phi((-m - 0.2)/0.5) = 1/2, m = 0.365 (computed with scipy).
-    from scipy import optimize, stats
-
     median = optimize.brentq(lambda m: stats.norm.cdf((m - 0.2) / 0.5) - stats.norm.cdf((-m - 0.2) / 0.5) - 0.5, 0.0, 2.0)
     # 2,000 pairs know a median to about 1.25 x 0.3/sqrt(2000) = 0.008; three of these.
     assert lift_of_noise(np.abs(draws[:, 0].real), 0.2) == pytest.approx(median - 0.2, abs=0.025)

@@ -242,6 +242,25 @@ def test_standard_errors_cover(cycles, low, high):
     assert low <= np.mean(inside) <= high
 
 
+def test_harmonics_chosen_for_their_size_count_with_a_wider_error():
+    """A harmonic of noise alone that passes at 20 % is one of the larger ones: 1 - ln 0.2 = 2.61 times the mean square of all."""
+    time = np.arange(2400) / 100
+    chosen, said = [], []
+    for seed in range(220):
+        rng = np.random.default_rng(seed)
+        values = wave(TRUE[:3], time) + 0.5 * rng.normal(size=time.size)
+        harmonics = decompose(find_cycles(Signal(time, values), period=1.0))
+        if harmonics.count == 3:
+            chosen.append(abs(harmonics.coefficients[3]) ** 2)
+            said.append(np.sum(np.asarray(harmonics.standard_error)[3] ** 2))
+            assert "Harmonic 3 was chosen for size at the 20 % level" in " ".join(harmonics.remarks)
+    assert len(chosen) > 20
+    # 0.16 of 220 records, about 35 squares that scatter by 38 % each: the ratio is known to 7 %, and the noise of 24 cycles adds little.
+    assert np.mean(chosen) / np.mean(said) == pytest.approx(1.0, abs=0.3)
+    asked = decompose(find_cycles(Signal(time, values), period=1.0), count=3)
+    assert "chosen for size" not in " ".join(asked.remarks)
+
+
 def test_successive_cycles_that_are_alike_widen_the_error():
     """Gains of a first-order process with r = 0.7: the mean of M is known as that of M (1 - r)/(1 + r) independent ones."""
     each, cycles, r = 40, 60, 0.7

@@ -10,7 +10,7 @@ from numpy.typing import NDArray
 from ..errors import InputError, SignalError
 from ..quantities import from_si
 from .cycles import Cycles
-from .decompose_spread import Fit, as_complex, as_real, covariance_of, noise_of, significant_count
+from .decompose_spread import Fit, as_complex, as_real, covariance_of, noise_of, significant_count, widened
 from .fitting import cycle_course, fit_harmonics, harmonic_basis
 from .harmonics import Harmonics
 
@@ -173,7 +173,7 @@ def decompose(cycles: Cycles, count: int | None = None, *, weights: NDArray[np.f
         fit, looked = _fit_below(phase, values, looked, 1 if count is None else int(count), sample_weights)
     own = cycle_coefficients(cycles, looked, as_complex(fit.vector)) if cycles.count > 1 else np.empty((0, looked + 1), dtype=complex)
     noise, freedom = noise_of(fit, own, looked)
-    kept = int(count) if count is not None else significant_count(fit, noise, freedom, looked, cycles.count)
+    sure, kept = (int(count), int(count)) if count is not None else significant_count(fit, noise, freedom, looked, cycles.count)
     if not each and kept < looked:
         fit = fit_harmonics(phase, values, kept, sample_weights)
     coefficients = as_complex(fit.vector[: 2 * kept + 1])
@@ -181,7 +181,14 @@ def decompose(cycles: Cycles, count: int | None = None, *, weights: NDArray[np.f
     if cycles.align == "onset":
         coefficients, own, extra = _whole_mean(cycles, coefficients, own)
     covariance, freedom, said = covariance_of(fit, own, kept, values.size, each, noise)
-    remarks = [*cycles.remarks, _kept_words(values, coefficients, kept, most, count, 1 if cycles.count > 1 else 5), said, *extra]
+    covariance, chosen = widened(covariance, sure)
+    remarks = [
+        *cycles.remarks,
+        _kept_words(values, coefficients, kept, most, count, 1 if cycles.count > 1 else 5),
+        said,
+        *([chosen] if chosen else []),
+        *extra,
+    ]
     return Harmonics(
         1.0 / cycles.base_period, coefficients, covariance=covariance, degrees_of_freedom=freedom, unit=cycles.signal.unit, remarks=remarks
     )
