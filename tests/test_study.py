@@ -56,6 +56,7 @@ def test_two_workers_give_the_same_table(few):
     template, places, out = few
     one = run_study(template, places, out=out, pictures=False).table
     two = run_study(template, places, out=out.with_name("two"), pictures=False, jobs=2).table
+    assert list(two["message"]) == list(one["message"])
     pd.testing.assert_frame_equal(one, two)
 
 

@@ -41,13 +41,14 @@ def _courses(waves: NDArray[np.complex128], size: int) -> NDArray[np.float64]:
 def line_numbers(
     line: Line, omega: NDArray[np.float64], medium: Medium, values: Mapping[str, Any], loads: Sequence[Load], states: Sequence[Any],
     positions: NDArray[np.float64], *, watch: float, ambient: float, base_pressure: Any = None, mean_flow: Any = 0.0, rule: Any = None, floor: Any = None,
-    instants: int = 128,
+    instants: int = 0,
 ) -> LineNumbers:  # fmt: skip
     """Return all numbers that vary with the samples.
 
     ``base_pressure`` is the mean absolute pressure at 0 m (S,) or None; ``floor`` the absolute pressure that the liquid must
     not reach; ``watch`` a position whose course is kept.
     """
+    instants = instants or int(2 ** np.ceil(np.log2(max(128, 4 * omega.shape[-1]))))
     pressure, flow = along(line, omega, medium, values, loads, states, positions)
     pressure = np.moveaxis(_sampled(pressure), 0, 1)  # (S, P, N)
     flow = np.moveaxis(_sampled(flow), 0, 1)
