@@ -290,6 +290,9 @@ class Screen(anywidget.AnyWidget):
 
     # Where no widget can run
 
+    def __repr__(self) -> str:
+        return f"<{type(self).__name__} on {self.state.case!r}>"
+
     def _repr_mimebundle_(self, **more: Any) -> Any:
         bundle = super()._repr_mimebundle_(**more)
         data, meta = bundle if isinstance(bundle, tuple) else (bundle, {})
