@@ -224,3 +224,34 @@ def test_checks_hear_the_samples(tmp_path):
     check = pk.analyse(case, samples=2000).checks["laminar_mean"]
     assert "% of the samples" in check.because
     assert check.verdict == "doubtful"
+
+
+def test_without_a_mean_the_words_are_about_the_oscillating_part(tmp_path):
+    (tmp_path / "run.csv").write_text("time (s),drop (Pa)\n" + "".join(f"{k / 100},{50 * np.cos(2 * np.pi * k / 100):.6f}\n" for k in range(600)))
+    case = pk.WallShearCase(
+        recording={"file": "run.csv", "signal": "drop", "quantity": "pressure_drop", "distance": "120 mm ± 2 %", "coupling": "ac"},
+        cycles={"period": "1 s"}, tube={"radius": "3.1 mm"}, fluid=FLUID, folder=tmp_path,
+    )  # fmt: skip
+    answer = pk.analyse(case, samples=500)
+    finding = answer.findings["pressure_gradient_amplitude"]
+    assert relative(finding) == pytest.approx(0.02, rel=0.15)
+    assert answer.findings["time_averaged_wall_shear_stress"].value is None
+    assert "recording.distance" in answer.improve
+    assert "amplitude of the pressure gradient" in str(answer.left_out_inputs[0])
+
+
+def test_a_station_at_the_origin_may_be_uncertain(tmp_path):
+    time = np.arange(600) / 100
+    rows = "".join(f"{t:.2f},{1000 + 60 * np.cos(2 * np.pi * t):.6f},{1000 - 60 * np.sin(2 * np.pi * t):.6f}\n" for t in time)
+    (tmp_path / "run.csv").write_text("time (s),p1 (Pa),p2 (Pa)\n" + rows)
+    case = pk.WallShearCase(
+        recording={"quantity": "pressure_gradient", "upstream": "p1", "downstream": "p2"},
+        station=[
+            {"name": "p1", "file": "run.csv", "column": "p1", "position": "0 mm ± 1 mm", "height": "0 mm", "zero": "0 Pa"},
+            {"name": "p2", "file": "run.csv", "column": "p2", "position": "100 mm ± 1 mm", "height": "0 mm", "zero": "0 Pa"},
+        ],
+        cycles={"period": "1 s", "harmonics": 1}, tube={"radius": "3.1 mm"}, fluid=FLUID, folder=tmp_path,
+    )  # fmt: skip
+    finding = pk.analyse(case, samples=2000).findings["pressure_gradient_amplitude"]
+    # Two positions known to 1 mm each: 1.4 % of their distance.
+    assert relative(finding) == pytest.approx(np.sqrt(2) * 0.01, rel=0.1)

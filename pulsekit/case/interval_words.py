@@ -53,7 +53,7 @@ def interval_words(
         ]
     remarks = [
         f"Intervals: central 95 % of {count} Monte Carlo samples, seed {seed}; positive givens are log-normal with the stated mean and standard deviation, "
-        f"limits are rectangular, the harmonics a multivariate t; bands from the first {min(count, part)} samples. "
+        f"limits are rectangular, the harmonics a multivariate t; bands are central too, from the first {min(count, part)} samples. "
         "The samples' extremes and rectified means differ from the exact ones by less than 1e-4 of the swing."
     ]
     remarks += _fixed_words(rows, cloud, count)
