@@ -243,16 +243,25 @@ speed = "1480 rpm"
 mean_pressure = "180 bar"
 mean_flow = "38 L/min"
 
+[recording]
+file = "supply/steady.csv"
+trigger = "trigger"
+pulses_per_revolution = 1
+antialias_filter = "2 kHz"
+
+[cycles]
+harmonics = 54
+
 [source]
 kind = "measured pressure"
 pistons = 9
+
+[[station]]
+name = "at the pump"
 file = "supply/steady.csv"
-signal = "p"
-trigger = "trigger"
-pulses_per_revolution = 1
-station = "0.3 m"
+column = "p"
+position = "0.3 m"
 scale_uncertainty = "0.5 %"
-harmonics = 72
 
 [[element]]
 kind = "pipe"

@@ -1,7 +1,8 @@
 """From a recording to cycles to harmonics."""
 
 from .clock import Clock
-from .cycles import Cycles, find_cycles
+from .cutting import find_cycles
+from .cycles import Cycles
 from .decompose import cycle_coefficients, decompose
 from .harmonics import Harmonics
 from .reading import read_recording

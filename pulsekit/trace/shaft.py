@@ -9,7 +9,8 @@ import numpy as np
 from numpy.typing import NDArray
 
 from ..errors import InputError, SignalError
-from .cycles import Cycles, find_cycles
+from .cutting import find_cycles
+from .cycles import Cycles
 from .signal import Signal
 from .trigger import trigger_onsets
 

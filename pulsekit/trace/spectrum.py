@@ -15,7 +15,7 @@ __all__ = ["Line", "Unlocked", "unlocked_part"]
 
 _CENTRAL = 0.999
 _STANDS = 5.0  # times the median level of the spectrum
-_SMALL = 5e-3  # of the record's peak to peak: smaller lines are not named
+_SMALL = 2e-2  # of the record's peak to peak: smaller lines are not named
 _NEAR = 2.0  # bins on either side of a line that belong to it
 
 
