@@ -17,14 +17,16 @@ __all__ = ["profile_table"]
 
 _ROOT_I = np.exp(0.25j * np.pi)
 # Largest |zeta| of the power series of the difference, and of that of I0 alone. On the ray of zeta a power series loses
-# exp((1 - sqrt(1/2)) |zeta|): a factor of 33 and of 190, to 1e-14 and 4e-14. I0's expansion in 1/zeta, cut at 28 terms,
-# reaches 1e-16 from |zeta| = 18 on.
-_SERIES, _LARGE = 12.0, 18.0
+# exp((1 - sqrt(1/2)) |zeta|): a factor of 350 and of 190, to 4e-14 and 2e-14 at worst. I0's expansion in 1/zeta, cut at 28
+# terms, reaches 1e-16 from |zeta| = 18 on.
+_SERIES, _LARGE = 20.0, 18.0
 # Beyond this alpha nothing is left of exp(-zeta y) where |zeta x| < 18.
 _GONE = 80.0
 # Beyond, the powers of alpha in the wall series overflow.
 _POINTWISE = 1e8
-_TERMS, _WALL_TERMS, _LARGE_TERMS = 38, 20, 28
+# Nearer to the wall than this in alpha y, the core less what the wall slows would lose more than a digit.
+_NEAR = 0.05
+_TERMS, _WALL_TERMS, _LARGE_TERMS = 38, 10, 28
 
 _COUNT = np.arange(1.0, _TERMS + 1)
 _I0_STEPS = 1.0 / _COUNT**2  # ratios of successive terms of I0 in (zeta/2)^2
@@ -107,27 +109,22 @@ def _thin(numbers: NDArray[np.float64], y: NDArray[np.float64]) -> NDArray[np.co
     shear = shear_factor_of_square(numbers)
     gradient = 2.0 * shear + 1j * numbers**2
     inside = np.zeros((y.size, numbers.size), dtype=complex)
-    reach = numbers * (1.0 - y)[:, None]
-    large = reach > _LARGE
-    if np.any(large):
-        row, column = np.nonzero(large)
-        top = np.exp(-zeta[column] * y[row]) / np.sqrt(1.0 - y[row])
-        inside[row, column] = top * _large_i0(zeta[column] * (1.0 - y[row])) / _large_i0(zeta)[column]
+    large = numbers * (1.0 - y)[:, None] > _LARGE
+    row, column = np.nonzero(large)
+    # One pass for zeta x and for zeta itself.
+    factors = _large_i0(np.concatenate([zeta, zeta[column] * (1.0 - y[row])]))
+    at_wall, within = factors[: zeta.size], factors[zeta.size :]
+    inside[row, column] = np.exp(-zeta[column] * y[row]) / np.sqrt(1.0 - y[row]) * within / at_wall[column]
     some = np.flatnonzero(numbers < _GONE)
     if some.size:
-        values = _product_i0(zeta[some], 1.0 - y)
-        whole = np.empty(some.size, dtype=complex)
-        few = numbers[some] <= _LARGE
-        z = zeta[some]
-        if np.any(few):
-            whole[few] = _product_i0(z[few], np.ones(1))[0]
-        whole[~few] = np.exp(z[~few]) / np.sqrt(2 * np.pi * z[~few]) * _large_i0(z[~few])
-        inside[:, some] = np.where(large[:, some], inside[:, some], values / whole)
+        whole = np.exp(zeta[some]) / np.sqrt(2 * np.pi * zeta[some]) * at_wall[some]
+        inside[:, some] = np.where(large[:, some], inside[:, some], _product_i0(zeta[some], 1.0 - y) / whole)
     out = (gradient / zeta**2) * (1.0 - inside)
-    near = numbers * y[:, None] < 1.0
+    near = numbers * y[:, None] < _NEAR
     beside = np.flatnonzero(near.any(axis=1))
-    if beside.size:
+    if np.any(y[beside] > 0):
         out[beside] = np.where(near[beside], _at_wall(numbers, y[beside], shear, gradient), out[beside])
+    out[y == 0] = 0.0
     return out
 
 

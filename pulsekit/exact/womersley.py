@@ -36,8 +36,9 @@ _SERIES_BELOW = 6.0
 # On the axis nothing small is left over, so that the series may lose a digit.
 _AXIS_SERIES_BELOW = 10.0
 _COUNT = np.arange(1.0, 29.0)
-_AXIS_TERMS = np.cumprod(np.concatenate([[1.0], 1.0 / (_COUNT + 1) ** 2]))
-_I2_TERMS = np.cumprod(np.concatenate([[0.5], 1.0 / (_COUNT * (_COUNT + 2))]))
+_AXIS_TERMS = np.cumprod(1.0 / (_COUNT + 1) ** 2)
+_I2_TERMS = 0.5 * np.cumprod(1.0 / (_COUNT * (_COUNT + 2)))
+_PIECE = 512
 
 
 def checked(alpha: ArrayLike) -> NDArray[np.float64]:
@@ -141,13 +142,13 @@ def centreline_ratio(alpha: ArrayLike) -> Any:
 
 
 def _axis_series(numbers: NDArray[np.float64]) -> NDArray[np.complex128]:
-    """Ratio of the sums of q^(k-1)/(k!)^2 and q^k/(k! (k+2)!), q = (zeta/2)^2, by Horner's rule."""
-    q = 0.25j * numbers**2
-    numerator, below = np.full_like(q, _AXIS_TERMS[-1]), np.full_like(q, _I2_TERMS[-1])
-    for top, bottom in zip(_AXIS_TERMS[-2::-1], _I2_TERMS[-2::-1], strict=True):
-        numerator = numerator * q + top
-        below = below * q + bottom
-    return np.asarray(numerator / below, dtype=complex)
+    """Ratio of the sums of q^(k-1)/(k!)^2 and q^k/(k! (k+2)!), q = (zeta/2)^2, in pieces that stay in the cache."""
+    out = np.empty(numbers.size, dtype=complex)
+    for start in range(0, numbers.size, _PIECE):
+        q = 0.25j * numbers[start : start + _PIECE] ** 2
+        powers = np.cumprod(np.repeat(q[None, :], _COUNT.size, axis=0), axis=0)
+        out[start : start + _PIECE] = (1.0 + _AXIS_TERMS @ powers) / (0.5 + _I2_TERMS @ powers)
+    return out
 
 
 def velocity_profile(alpha: ArrayLike, x: ArrayLike | None = None, *, wall_distance: ArrayLike | None = None) -> Any:

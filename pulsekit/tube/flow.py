@@ -14,6 +14,7 @@ from ..errors import InputError
 from ..exact.similarity import womersley_number
 from ..trace.harmonics import Harmonics
 from .envelope import mean_velocity_of_envelope
+from .peak import powers_of
 
 __all__ = ["QUANTITIES", "TubeFlow", "alphas", "solve", "velocity_factor"]
 
@@ -152,8 +153,8 @@ class TubeFlow:
                 f"radius must lie between 0 and the tube's {self.tube.length_scale:.6g} m", name="radius", value=radius, allowed="0 to R"
             )
         shape = self.tube.profile(self.alpha, x) * self.mean_velocity.coefficients
-        turn = np.outer(np.arange(self.alpha.size) * self.mean_velocity.angular_frequency, instants.reshape(-1))
-        field_ = shape.real @ np.cos(turn) - shape.imag @ np.sin(turn)
+        turn = powers_of(np.exp(1j * self.mean_velocity.angular_frequency * instants.reshape(-1)), self.alpha.size)
+        field_ = shape.real @ turn.real - shape.imag @ turn.imag
         return field_.reshape(places.shape + instants.shape)[()]
 
     def findings(self) -> Findings:

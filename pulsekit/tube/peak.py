@@ -7,7 +7,7 @@ from typing import Any
 import numpy as np
 from numpy.typing import NDArray
 
-__all__ = ["peak_velocity", "section_places"]
+__all__ = ["peak_velocity", "powers_of", "section_places"]
 
 _ZOOMS, _POINTS = 4, 17
 # Chebyshev points between two neighbours of the best radius: a profile is smooth over one step of the grid.
@@ -78,5 +78,13 @@ def _climb(series: NDArray[np.complex128], at: float, phase: float, turn: float)
 
 def _field(terms: NDArray[np.complex128], phase: NDArray[np.float64]) -> NDArray[np.float64]:
     """Re sum of terms (K, N + 1) exp(i n phase), shape (K, len(phase))."""
-    turn = np.outer(np.arange(terms.shape[1]), phase)
-    return np.asarray(terms.real @ np.cos(turn) - terms.imag @ np.sin(turn))
+    turn = powers_of(np.exp(1j * phase), terms.shape[1])
+    return np.asarray(terms.real @ turn.real - terms.imag @ turn.imag)
+
+
+def powers_of(phasor: NDArray[np.complex128], count: int) -> NDArray[np.complex128]:
+    """Powers 0 to count - 1 of phasors (K,), shape (count, K): one exponential for all harmonics."""
+    out = np.empty((count, phasor.size), dtype=complex)
+    out[0] = 1.0
+    np.cumprod(np.broadcast_to(phasor, (count - 1, phasor.size)), axis=0, out=out[1:])
+    return out
