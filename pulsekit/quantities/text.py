@@ -41,6 +41,7 @@ def _number(text: str, name: str, given: str) -> Fraction:
 
 @lru_cache(maxsize=8192)
 def parse_text(text: str, dimension: str, name: str) -> Given:
+    """Read the text of a given: number, unit, and what follows the plus-minus sign."""
     body, divisor, shape = text.strip(), 1.0, "normal"
     example = EXAMPLES.get(dimension, f"'1 {DIMENSIONS[dimension]}'")
     if _COMMA.search(body):
