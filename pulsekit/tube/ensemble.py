@@ -16,7 +16,7 @@ __all__ = ["CURVES", "Ensemble", "propagate", "velocity_indices"]
 
 #: Curves that get a band.
 CURVES = ("wall_shear_stress", "pressure_gradient", "centreline_velocity", "flow_rate")
-_NODES = 20  # Chebyshev nodes over the range of the fundamental's Womersley number
+_MOST_NODES = 64  # Chebyshev nodes over the range of the fundamental's Womersley number; a range that asks for more is evaluated as it is
 _LEVELS = (0.025, 0.975)
 
 
@@ -30,27 +30,41 @@ class Ensemble:
     mean_velocity: NDArray[np.complex128] = field(repr=False)
 
 
+def _nodes(ratio: float) -> int:
+    """Chebyshev nodes that bring a factor to rounding over alpha from 1 to ``ratio``.
+
+    The factors' poles (zeros of I2) lie on the rays at 45 degrees to the real alpha; the one whose ellipse about the range is the narrowest
+    sets the rate rho at which the series falls, and rho^-nodes = 1e-16 the number.
+    """
+    poles = np.exp(0.25j * np.pi) * np.linspace(0.5, ratio + 0.5, 200)
+    z = (poles - 0.5 * (1 + ratio)) / (0.5 * (ratio - 1))
+    root = np.sqrt(z * z - 1)
+    rho = float(np.maximum(np.abs(z + root), np.abs(z - root)).min())
+    return int(np.ceil(36.9 / np.log(rho))) + 2
+
+
 def _factor(
     function: Callable[[NDArray[np.float64]], Any], first: NDArray[np.float64], count: int
 ) -> NDArray[np.complex128]:
     """Factor (S, N + 1) at alpha_n = sqrt(n) alpha_1: one Chebyshev interpolant over the samples' range serves all.
 
-    The factors are analytic in alpha; over the range of a sampled radius and viscosity 20 nodes reach rounding.
+    The factors are analytic in alpha: some 20 nodes reach rounding over the range of a usual radius and viscosity, more over a wider one.
     """
     root = np.sqrt(np.arange(count + 1.0))
     low, high = float(first.min()), float(first.max())
     if high - low <= 1e-14 * high:
         return np.broadcast_to(np.asarray(function(low * root)), (first.size, count + 1))
-    if high > 1.6 * low:
+    size = _nodes(high / low)
+    if size > _MOST_NODES or 2 * size > first.size:
         return np.asarray(function(first[:, None] * root))
-    angle = (np.arange(_NODES) + 0.5) * np.pi / _NODES
+    angle = (np.arange(size) + 0.5) * np.pi / size
     nodes = 0.5 * (low + high) + 0.5 * (high - low) * np.cos(angle)
     table = np.asarray(function(nodes[:, None] * root))
-    weights = np.cos(np.outer(np.arange(_NODES), angle)) * (2.0 / _NODES)
+    weights = np.cos(np.outer(np.arange(size), angle)) * (2.0 / size)
     weights[0] *= 0.5
     series = weights @ table
     place = np.clip((2 * first - low - high) / (high - low), -1.0, 1.0)
-    basis = np.cos(np.outer(np.arccos(place), np.arange(_NODES)))
+    basis = np.cos(np.outer(np.arccos(place), np.arange(size)))
     out = np.empty((first.size, count + 1), dtype=complex)
     out.real = basis @ series.real
     out.imag = basis @ series.imag
