@@ -116,6 +116,21 @@ def test_the_interval_says_what_it_leaves_out_and_the_effect_of_five_per_cent(tm
     assert "0.0 %" in rows["fluid.density"]
 
 
+def test_temperatures_that_enter_nothing_are_not_left_out(tmp_path):
+    fluid = {"kind": "given", "density": "1060 kg/m^3", "viscosity": "3.5 mPa*s", "measured_at": "22 degC", "temperature": "22 degC"}
+    keys = {entry.key for entry in pk.analyse(steady_case(tmp_path, swing=1e-3, fluid=fluid), samples=200).left_out_inputs}
+    assert {"fluid.density", "fluid.viscosity"} <= keys
+    assert not keys & {"fluid.measured_at", "fluid.temperature"}
+
+
+def test_a_temperature_that_counts_is_left_out_by_one_degree(tmp_path):
+    case = steady_case(tmp_path, swing=1e-3, fluid={"kind": "water", "temperature": "20 degC"})
+    rows = {entry.key: str(entry) for entry in pk.analyse(case, samples=200).left_out_inputs}
+    # Viscosity of water, 1.0016 mPa s at 20 °C and 0.9775 at 21 °C (IAPWS tables, from memory): 2.4 %.
+    assert "1 °C more would change" in rows["fluid.temperature"]
+    assert "2.4 %" in rows["fluid.temperature"]
+
+
 def test_stated_as_exact_is_not_left_out(tmp_path):
     case = steady_case(tmp_path, swing=1e-3, tube={"radius": "3.1 mm ± 0 mm"})
     assert "tube.radius" not in {entry.key for entry in pk.analyse(case, samples=500).left_out_inputs}
@@ -227,7 +242,9 @@ def test_checks_hear_the_samples(tmp_path):
 
 
 def test_without_a_mean_the_words_are_about_the_oscillating_part(tmp_path):
-    (tmp_path / "run.csv").write_text("time (s),drop (Pa)\n" + "".join(f"{k / 100},{50 * np.cos(2 * np.pi * k / 100):.6f}\n" for k in range(600)))
+    (tmp_path / "run.csv").write_text(
+        "time (s),drop (Pa)\n" + "".join(f"{k / 100},{50 * np.cos(2 * np.pi * k / 100):.6f}\n" for k in range(600))
+    )
     case = pk.WallShearCase(
         recording={"file": "run.csv", "signal": "drop", "quantity": "pressure_drop", "distance": "120 mm ± 2 %", "coupling": "ac"},
         cycles={"period": "1 s"}, tube={"radius": "3.1 mm"}, fluid=FLUID, folder=tmp_path,

@@ -165,7 +165,10 @@ def left_out(
 ) -> tuple[LeftOut, ...]:
     """Givens without a stated uncertainty, and what 5 % on each would add to the leading finding."""
     lead = lead_of(rows)
-    open_keys = [key for key, entry in inputs.items() if not entry.given.stated and entry.given.value != 0 and entry.given.text != "tube"]
+    open_keys = [
+        key for key, entry in inputs.items()
+        if not entry.given.stated and entry.given.value != 0 and entry.given.text != "tube" and not key.endswith(".measured_at")
+    ]  # fmt: skip
     if not open_keys or lead is None:
         return ()
     values = {key: np.full(len(open_keys), value) for key, value in nominal.items()}
@@ -177,6 +180,8 @@ def left_out(
     out = []
     for place, key in enumerate(open_keys):
         change = abs(float(found[place]) / at[lead.name] - 1) if at[lead.name] else 0.0
+        if change < 1e-12 and key.endswith(".temperature"):
+            continue  # as with a measured viscosity and density: it enters nothing
         size = "1 °C" if inputs[key].given.dimension == "temperature" else "5 %"
         out.append(LeftOut(key, f"{key} ({size} more would change the {_words_of(lead)} by {100 * change:.1f} %)"))
     return tuple(out)
