@@ -46,6 +46,7 @@ class GasDamper(_Shunt):
     """
 
     kind = "gas damper"
+    holds_gas = True
 
     def __init__(
         self, gas_volume: Any = None, pressure: Any = None, polytropic_exponent: Any = None, *, nominal_volume: Any = None, precharge: Any = None,

@@ -43,6 +43,7 @@ class Element:
 
     kind = "element"
     length = 0.0
+    holds_gas = False
 
     @property
     def values(self) -> dict[str, float]:
@@ -342,9 +343,10 @@ class Restrictor(Element):
         return np.where(np.isfinite(through), through, pressure - self.resistance(medium, values) * flow), flow
 
     def steady_drop(self, flow: Any, medium: Medium, values: Values) -> Any:
-        """The law itself."""
+        """The law itself, and what a ``ripple_drop`` in values adds: pulsation raises the mean of k Q abs(Q)."""
         flow, k = np.asarray(flow, float), self.constant(values)
-        return k * flow if self.law == "laminar" else k * flow * np.abs(flow)  # type: ignore[attr-defined]
+        steady = k * flow if self.law == "laminar" else k * flow * np.abs(flow)  # type: ignore[attr-defined]
+        return steady + values.get("ripple_drop", 0.0)
 
 
 class _Shunt(Element):
@@ -412,6 +414,11 @@ class SideBranch(_Shunt):
         super().__init__(MappingProxyType(givens), name, **_limits(rated_pressure, relief_setting))
         object.__setattr__(self, "elements", tuple(elements))
         object.__setattr__(self, "end", end)
+
+    @property
+    def holds_gas(self) -> bool:  # type: ignore[override]
+        """Tell whether a damper stands in the branch."""
+        return any(element.holds_gas for element in self.elements)  # type: ignore[attr-defined]
 
     def branch(self, omega: Any, medium: Medium, values: Values) -> Load:
         """Return the load of the branch: no mean flow passes a closed one."""

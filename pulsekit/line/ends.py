@@ -101,7 +101,7 @@ class ImpedanceEnd(End):
 
     def __init__(self, impedance: Any) -> None:
         function = impedance if callable(impedance) else None
-        givens: Mapping[str, Given] = field(default_factory=lambda: _NONE)
+        givens: Mapping[str, Given] = _NONE
         constant: complex = 0j
         if function is None:
             if isinstance(impedance, complex):

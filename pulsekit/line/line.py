@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 from typing import Any
 
 import numpy as np
@@ -133,14 +133,31 @@ class Line:
         }  # fmt: skip
         return Medium(**(fields | changes))
 
+    def media(self, medium: Medium, values: Mapping[str, Any]) -> list[Medium]:
+        """The medium at the middle of each element and at the end, where gas feels the steady pressure drop before it.
+
+        Where that would leave nothing above zero absolute (a line that no liquid bears, whose answer is not usable) the
+        pressure at 0 m stands.
+        """
+        gas = medium.has_gas or any(element.holds_gas for element in self.elements)
+        if medium.pressure is None or medium.mean_flow is None or not gas:
+            return [medium] * (len(self.elements) + 1)
+        media, upstream = [], np.asarray(medium.pressure, float)
+        for drop in [*self.steady_drops(medium.mean_flow, medium, values), 0.0]:
+            middle = upstream - 0.5 * np.asarray(drop)
+            media.append(replace(medium, pressure=np.where(middle > 0, middle, medium.pressure)[()]))
+            upstream = upstream - np.asarray(drop)
+        return media
+
     def loads(self, omega: Any, medium: Medium, values: Mapping[str, Any]) -> list[Load]:
         """Load at the upstream side of each element, and at the end, in order."""
+        media = self.media(medium, values)
         conduit = max(place for place, element in enumerate(self.elements) if isinstance(element, _Conduit))
-        load = self.end.load(omega, medium, part(values, "end"), self.elements[conduit], part(values, f"element.{conduit}"))
+        load = self.end.load(omega, media[-1], part(values, "end"), self.elements[conduit], part(values, f"element.{conduit}"))
         found = [load]
         for place in range(len(self.elements) - 1, -1, -1):
             element = self.elements[place]
-            load = element.upstream(load, omega, medium, part(values, f"element.{place}"))
+            load = element.upstream(load, omega, media[place], part(values, f"element.{place}"))
             found.append(load)
         return found[::-1]
 

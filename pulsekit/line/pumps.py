@@ -118,7 +118,7 @@ def plunger_pump(
         if acting == "double":
             # The other side delivers on the way back.
             back = np.mod(angle - np.pi, 2 * np.pi)
-            inside = (back >= lag) & (back < np.pi + lag)
+            inside = (back >= lag) & (back < np.pi + lag) & ((1 - travelled(angle) >= compression) | (back >= np.pi))
             flow = flow - np.where(inside, speed_of(angle), 0.0)
         return flow
 

@@ -2,13 +2,16 @@
 
 from __future__ import annotations
 
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
 from typing import Any
 
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
+from .elements import Element, SideBranch, _Conduit, part
 from .line import Line
+from .medium import Medium
 from .sources import FlowSource, MeasuredPressure
 from .states import along, march, start_state
 
@@ -105,8 +108,28 @@ class SpeedMap:
     per_order: NDArray[np.float64]
 
 
-def speed_map(line: Line, source: FlowSource, speeds: ArrayLike, positions: ArrayLike, *, wave_speed_factor: float = 1.0) -> SpeedMap:
-    """Return the pulsation over a range of speeds, the source's flow growing with speed.
+def _speeds_times(factor: float, elements: Sequence[Element], medium: Medium, values: Mapping[str, Any], above: str) -> dict[str, Any]:
+    """Wave speeds of all pipes and hoses times a factor, by dotted key."""
+    found: dict[str, Any] = {}
+    for place, element in enumerate(elements):
+        prefix = f"{above}element.{place}"
+        if isinstance(element, _Conduit):
+            found[f"{prefix}.wave_speed"] = factor * np.asarray(element.wave_speed(medium, part(values, prefix)))
+        elif isinstance(element, SideBranch):
+            found |= _speeds_times(factor, element.elements, medium, values, f"{prefix}.")  # type: ignore[attr-defined]
+    return found
+
+
+def speed_map(
+    line: Line,
+    source: FlowSource,
+    speeds: ArrayLike,
+    positions: ArrayLike,
+    *,
+    wave_speed_factor: float = 1.0,
+    values: Mapping[str, Any] | None = None,
+) -> SpeedMap:
+    """Return the pulsation over a range of speeds, the source's flow, mean and pulsating, growing with speed.
 
     Parameters
     ----------
@@ -118,20 +141,24 @@ def speed_map(line: Line, source: FlowSource, speeds: ArrayLike, positions: Arra
     positions : array_like, shape (n_position,)
         [m]
     wave_speed_factor : float
-        By which all wave speeds are multiplied, to see what their uncertainty does.
+        By which the wave speeds of all pipes and hoses are multiplied, to see what their uncertainty does.
+    values : mapping, optional
+        Numbers of the elements, such as those of a response with its equivalent resistances; the line's own if not given.
     """
     turning, places = np.asarray(speeds, float), np.asarray(positions, float)
     coefficients = np.asarray(source.harmonics.coefficients)
     orders = np.flatnonzero(np.abs(coefficients[1:]) > 1e-12 * np.abs(coefficients).max()) + 1
     ratio = turning[:, None] / source.harmonics.frequency
-    # A wave speed c f is the same line at frequency omega/f with all else kept, to first order in friction.
-    omega = 2 * np.pi * turning[:, None] * orders / wave_speed_factor
+    omega = 2 * np.pi * turning[:, None] * orders
     mean = line.mean_flow if line.mean_flow is not None else source.harmonics.mean
-    medium = line.medium(mean_flow=mean)
-    loads = line.loads(omega, medium, line.values)
+    medium = line.medium(mean_flow=mean * ratio)
+    numbers = dict(line.values if values is None else values)
+    if wave_speed_factor != 1.0:
+        numbers |= _speeds_times(wave_speed_factor, line.elements, medium, numbers, "")
+    loads = line.loads(omega, medium, numbers)
     start = start_state(loads[0], coefficients[orders] * ratio, source.admittance(omega / (2 * np.pi)))
-    states = march(line, omega, medium, line.values, loads, start)
-    waves = along(line, omega, medium, line.values, loads, states, places)[0] * wave_speed_factor
+    states = march(line, omega, medium, numbers, loads, start)
+    waves = along(line, omega, medium, numbers, loads, states, places)[0]
     waves = np.moveaxis(np.broadcast_to(waves, (places.size, turning.size, orders.size)), 0, 1)
     lowest = int(np.gcd.reduce(orders))
     reduced = orders // lowest

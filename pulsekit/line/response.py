@@ -13,7 +13,7 @@ from numpy.typing import ArrayLike, NDArray
 from ..errors import InputError
 from ..quantities import to_si
 from ..trace.harmonics import Harmonics
-from .balance import equivalent_resistance, merged, reverses
+from .balance import equivalent_resistance, mean_turbulent_drop, merged, reverses
 from .elements import part
 from .line import Line
 from .load import Load
@@ -159,8 +159,9 @@ def respond(line: Line, source: Any, *, values: Mapping[str, Any] | None = None)
         )
     if medium.mean_flow is None:
         remarks.append("No mean flow is known: restrictors are linearised at the flow given with them, friction in pipes is laminar.")
+    settled = merged(numbers, resistances) | _ripple_drops(line, omega, medium, now, states)
     return LineResponse(
-        line=line, source=source, frequency=harmonics.frequency, medium=medium, values=merged(numbers, resistances), loads=loads, states=states,
+        line=line, source=source, frequency=harmonics.frequency, medium=medium, values=settled, loads=loads, states=states,
         remarks=tuple(remarks), amplitude_dependent=tuple(resistances),
     )  # fmt: skip
 
@@ -181,6 +182,15 @@ def _start(line: Line, source: Any, omega: Any, medium: Medium, values: Mapping[
         )  # fmt: skip
     factor = np.asarray(source.harmonics.coefficients[1:]) / reached
     return load.pressure * factor, load.flow * factor
+
+
+def _ripple_drops(line: Line, omega: Any, medium: Medium, values: Mapping[str, Any], states: Sequence[Any]) -> dict[str, Any]:
+    """By how much pulsation raises the mean drop of each turbulent restrictor [Pa]."""
+    found = {}
+    for prefix, (flow, mean, element) in branch_flows(line, omega, medium, values, states).items():
+        k = element.constant(part(values, prefix))
+        found[f"{prefix}.ripple_drop"] = float(mean_turbulent_drop(k, mean, flow) - k * mean * np.abs(mean))
+    return found
 
 
 def _rebalanced(

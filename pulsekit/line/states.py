@@ -30,9 +30,9 @@ def start_state(load: Load, flow: Any, admittance: Any) -> State:
 
 def march(line: Line, omega: Any, medium: Medium, values: Mapping[str, Any], loads: Sequence[Load], start: State) -> list[State]:
     """Pressure and flow at the upstream side of each element, and at the end."""
-    states = [start]
+    states, media = [start], line.media(medium, values)
     for place, element in enumerate(line.elements):
-        states.append(element.onward(states[-1], loads[place + 1], omega, medium, part(values, f"element.{place}")))
+        states.append(element.onward(states[-1], loads[place + 1], omega, media[place], part(values, f"element.{place}")))
     return states
 
 
@@ -47,7 +47,10 @@ def place_of(line: Line, position: float) -> tuple[int, float]:
     starts = line.starts
     if not -1e-9 <= position <= starts[-1] * (1 + 1e-9) + 1e-9:
         raise InputError(
-            f"position = {position:.6g} m lies outside the line of 0 to {starts[-1]:.6g} m", name="position", value=position, allowed=f"0 to {starts[-1]:.6g} m"
+            f"position = {position:.6g} m lies outside the line of 0 to {starts[-1]:.6g} m",
+            name="position",
+            value=position,
+            allowed=f"0 to {starts[-1]:.6g} m",
         )
     for place, element in enumerate(line.elements):
         if position <= starts[place] + 1e-12:
@@ -58,36 +61,49 @@ def place_of(line: Line, position: float) -> tuple[int, float]:
 
 
 def along(
-    line: Line, omega: Any, medium: Medium, values: Mapping[str, Any], loads: Sequence[Load], states: Sequence[State], positions: Iterable[float]
+    line: Line,
+    omega: Any,
+    medium: Medium,
+    values: Mapping[str, Any],
+    loads: Sequence[Load],
+    states: Sequence[State],
+    positions: Iterable[float],
 ) -> tuple[NDArray[np.complex128], NDArray[np.complex128]]:
     """Pressure and flow at positions, the position axis first."""
-    pressures, flows = [], []
-    for position in positions:
-        place, distance = place_of(line, float(position))
-        if place == len(line.elements) or distance == 0.0:
-            pressure, flow = states[place]
-        else:
-            element = line.elements[place]
-            # A sampled length moves the stations in proportion.
-            inner = part(values, f"element.{place}")
-            stretched = distance / element.length * np.asarray(inner["length"])
-            pressure, flow = element.inside(states[place], loads[place + 1], omega, medium, inner, stretched)  # type: ignore[attr-defined]
-        pressures.append(pressure)
-        flows.append(flow)
-    return np.stack(np.broadcast_arrays(*pressures)), np.stack(np.broadcast_arrays(*flows))
+    media = line.media(medium, values)
+    spots = [place_of(line, float(position)) for position in positions]
+    shape = np.broadcast_shapes(*(np.shape(number) for state in states for number in state))
+    pressures, flows = np.empty((len(spots), *shape), complex), np.empty((len(spots), *shape), complex)
+    for place in {place for place, _ in spots}:
+        rows = [row for row, (found, _) in enumerate(spots) if found == place]
+        distances = np.array([spots[row][1] for row in rows])
+        if place == len(line.elements) or not distances.any():
+            pressures[rows], flows[rows] = states[place]
+            continue
+        element = line.elements[place]
+        # A sampled length moves the stations in proportion.
+        inner = part(values, f"element.{place}")
+        share = (distances / element.length).reshape(-1, *(1,) * len(shape))
+        pressures[rows], flows[rows] = element.inside(  # type: ignore[attr-defined]
+            states[place], loads[place + 1], omega, media[place], inner, share * np.asarray(inner["length"])
+        )
+    return pressures, flows
 
 
-def branch_flows(line: Line, omega: Any, medium: Medium, values: Mapping[str, Any], states: Sequence[State]) -> dict[str, tuple[Any, Any, Restrictor]]:
+def branch_flows(
+    line: Line, omega: Any, medium: Medium, values: Mapping[str, Any], states: Sequence[State]
+) -> dict[str, tuple[Any, Any, Restrictor]]:
     """Flow through every turbulent restrictor, with the mean flow there: dotted prefix -> (harmonics, mean, element)."""
     found: dict[str, tuple[Any, Any, Restrictor]] = {}
     mean = 0.0 if medium.mean_flow is None else medium.mean_flow
+    media = line.media(medium, values)
     for place, element in enumerate(line.elements):
         prefix = f"element.{place}"
         if isinstance(element, Restrictor) and element.law == "turbulent":  # type: ignore[attr-defined]
             if medium.mean_flow is not None:
                 found[prefix] = (states[place][1], mean, element)
         elif isinstance(element, SideBranch):
-            branch = element.branch(omega, medium, part(values, prefix))
+            branch = element.branch(omega, media[place], part(values, prefix))
             with np.errstate(divide="ignore", invalid="ignore"):
                 aside = states[place][0] * branch.flow / branch.pressure
             # Only restrictors at the mouth of a branch carry exactly the branch's flow.
