@@ -71,8 +71,7 @@ class DeskState:
         self._past: list[Case] = []
         self._gesture = ""
         if source is not None:
-            self.open(source)
-            self._past.clear()
+            self.begin(source)
 
     # What is there
 
@@ -129,6 +128,11 @@ class DeskState:
         self.folder = case.folder.resolve()
         self.take(case)
         return self.answer_now()
+
+    def begin(self, source: str | Path | Case) -> None:
+        """Open the first case; there is nothing to go back to before it."""
+        self.open(source)
+        self._past.clear()
 
     def choose_recording(self, path: str | Path, *, progress: Any = None, stop: Any = None) -> bool:
         """Take another recording; a workbench says what it guesses from it."""

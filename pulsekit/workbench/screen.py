@@ -70,7 +70,7 @@ class Screen(anywidget.AnyWidget):
     cautions: Sequence[str] = ()
     rest = 0.3  # seconds without a change after which intervals are computed
 
-    def __init__(self, state: DeskState, **more: Any) -> None:
+    def __init__(self, state: DeskState, source: Any = None, **more: Any) -> None:
         self.state = state
         self.faults: list[str] = []
         self._background = Latest(rest=self.rest)
@@ -82,11 +82,17 @@ class Screen(anywidget.AnyWidget):
         self._echo = 0
         super().__init__(**more)
         self.desk = self._desk()
-        if state.answer is not None:
-            state.refine()
-        self.push()
+        self._guarded(lambda: self._begin(source))
         self.on_msg(self._on_message)
         self.observe(self._on_cursor, names="cursor")
+
+    def _begin(self, source: Any) -> None:
+        """Open what was asked for, in full, so that a saved notebook holds the answer."""
+        if source is not None:
+            self.state.begin(source)
+        if self.state.answer is not None:
+            self.state.refine()
+        self.push()
 
     # What a workbench brings
 

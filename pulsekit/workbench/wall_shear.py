@@ -46,7 +46,7 @@ class WallShearWorkbench(Screen):
     state: WallShearState
 
     def __init__(self, source: str | Path | Case | None = None, *, folder: str | Path | None = None, **more: Any) -> None:
-        super().__init__(WallShearState(source, folder=folder), **more)
+        super().__init__(WallShearState(folder=folder), source, **more)
 
     def givens_now(self) -> list[dict[str, Any]]:
         """Groups of fields."""

@@ -11,7 +11,7 @@ import pytest
 from .serving import served
 
 pytestmark = pytest.mark.browser
-WAIT = 60_000
+WAIT = 90_000
 SHEAR = '.pk-picture[style*="wall_shear_stress"] path.pk-line.role-shear:not(.pale)'
 
 
