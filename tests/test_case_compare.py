@@ -114,3 +114,27 @@ def test_lines_compare_too():
     name = "largest_peak_to_peak_pressure"
     assert width(found.findings[f"change_of_{name}"]) < 0.5 * width(one.findings[name])
     assert found.findings[f"change_of_{name}"].low <= found.findings[f"change_of_{name}"].value <= found.findings[f"change_of_{name}"].high
+
+
+def line_case(speed):
+    """A plunger pump on a closed pipe; its wave speed is uncertain."""
+    return pk.PumpLineCase(
+        fluid={"kind": "given", "density": "1000 kg/m^3", "viscosity": "1 mPa*s"},
+        operation={"speed": "600 rpm", "mean_pressure": "100 bar", "mean_flow": "40 L/min"},
+        source={"kind": "plunger pump", "plungers": 3, "rod_ratio": 5, "acting": "single"},
+        element=[{"kind": "pipe", "length": "2 m", "radius": "8 mm", "wave_speed": speed}], end={"kind": "closed"}, uncertainty={"samples": 200},
+    )  # fmt: skip
+
+
+def test_pump_lines_share_what_is_equal():
+    answer = pk.analyse(line_case("1300 m/s ± 2 %"))
+    same = pk.compare(answer, answer)
+    assert "element.0.wave_speed" in same.common
+    assert same.findings["ratio_of_wave_speed"].value == pytest.approx(1.0)
+    assert width(same.findings["ratio_of_wave_speed"]) < 1e-9
+    apart = pk.compare(answer, pk.analyse(line_case("1250 m/s ± 2 %")))
+    assert "element.0.wave_speed" not in apart.common
+    ratio = apart.findings["ratio_of_wave_speed"]
+    assert ratio.value == pytest.approx(1.04, rel=1e-3)
+    # Independent speeds: the ratio's standard deviation is sqrt(2) x 2 %; 200 samples know the ends to about 12 % of the half width.
+    assert math.log(ratio.high / ratio.low) == pytest.approx(2 * 1.96 * math.sqrt(2) * 0.02, rel=0.35)
