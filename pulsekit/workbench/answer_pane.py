@@ -22,7 +22,7 @@ def answer_rows(
     """
     if answer is None:
         return {"empty": True, "cautions": list(cautions)}
-    head = interval_head(answer) if full else "95 % interval: being computed"
+    head = interval_head(answer) if full else "95 % interval: not computed yet"
     changes = _changes(answer, reference, comparison)
     rows = []
     for row in finding_rows(answer.findings):

@@ -51,7 +51,7 @@ def main(case: Path, chromium: str) -> float:
         write_notebook(folder / "bench.ipynb", f"from pulsekit.workbench import WallShearWorkbench\nWallShearWorkbench({case.name!r})")
         with served("voila", folder, home) as address, browser(chromium) as driver:
             page = driver.new_page(viewport={"width": 1440, "height": 900})
-            page.goto(f"{address}/voila/render/bench.ipynb")
+            page.goto(f"{address}/voila/render/bench.ipynb", wait_until="domcontentloaded")
             page.wait_for_selector(".pk path.pk-line", timeout=60_000)
             page.wait_for_timeout(1000)
             times = measure(page)
