@@ -7,7 +7,8 @@ import pytest
 
 import pulsekit as pk
 from pulsekit.errors import InputError
-from pulsekit.tube.ensemble import CURVES, propagate
+from pulsekit.exact.womersley import centreline_ratio, pressure_factor, shear_factor, velocity_profile
+from pulsekit.tube.ensemble import CURVES, _factors, propagate
 from pulsekit.tube.flow import TubeFlow
 from pulsekit.tube.peak import peak_velocity
 
@@ -84,6 +85,15 @@ def test_a_wide_range_of_radii_and_no_range_at_all(givens):
         np.testing.assert_array_less(np.abs(cloud.findings["time_averaged_wall_shear_stress"] - wanted), STATED * swing)
         wanted = np.array([found["peak_wall_shear_stress"].value for found in single])
         np.testing.assert_array_less(np.abs(cloud.findings["peak_wall_shear_stress"] - wanted), STATED * swing)
+
+
+@pytest.mark.parametrize(("middle", "spread"), [(0.3, 0.02), (4.7, 0.05), (4.7, 0.15), (40.0, 0.05), (3e3, 0.1), (4.7, 1.0)])
+def test_interpolated_factors_are_the_factors(middle, spread):
+    first = middle * np.exp(spread * np.random.default_rng(2).standard_normal(400))
+    alpha = first[:, None] * np.sqrt(np.arange(COUNT + 1.0))
+    factors = _factors(first, COUNT)
+    for function in (shear_factor, pressure_factor, centreline_ratio, lambda a: velocity_profile(a, 0.4)):
+        np.testing.assert_allclose(factors(function), function(alpha), rtol=1e-12, atol=1e-13)
 
 
 def test_bands_are_central_quantiles_of_the_curves(givens):

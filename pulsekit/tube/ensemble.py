@@ -18,6 +18,7 @@ __all__ = ["CURVES", "Ensemble", "propagate", "velocity_indices"]
 CURVES = ("wall_shear_stress", "pressure_gradient", "centreline_velocity", "flow_rate")
 _MOST_NODES = 64  # Chebyshev nodes over the range of the fundamental's Womersley number; a range that asks for more is evaluated as it is
 _LEVELS = (0.025, 0.975)
+_TURNED = 16  # instants that are turned at once where a band is taken
 
 
 @dataclass(frozen=True, eq=False, kw_only=True)
@@ -43,32 +44,45 @@ def _nodes(ratio: float) -> int:
     return int(np.ceil(36.9 / np.log(rho))) + 2
 
 
-def _factor(
-    function: Callable[[NDArray[np.float64]], Any], first: NDArray[np.float64], count: int
-) -> NDArray[np.complex128]:
-    """Factor (S, N + 1) at alpha_n = sqrt(n) alpha_1: one Chebyshev interpolant over the samples' range serves all.
+def _factors(first: NDArray[np.float64], count: int) -> Callable[[Callable[[NDArray[np.float64]], Any]], NDArray[np.complex128]]:
+    """What turns a function of alpha into its factors (S, N + 1) at alpha_n = sqrt(n) alpha_1.
 
-    The factors are analytic in alpha: some 20 nodes reach rounding over the range of a usual radius and viscosity, more over a wider one.
+    One Chebyshev interpolant over the samples' range serves all: the factors are analytic in alpha, some 20 nodes reach
+    rounding over the range of a usual radius and viscosity, more over a wider one.
     """
     root = np.sqrt(np.arange(count + 1.0))
     low, high = float(first.min()), float(first.max())
     if high - low <= 1e-14 * high:
-        return np.broadcast_to(np.asarray(function(low * root)), (first.size, count + 1))
+        return lambda function: np.broadcast_to(np.asarray(function(low * root)), (first.size, count + 1))
     size = _nodes(high / low)
     if size > _MOST_NODES or 2 * size > first.size:
-        return np.asarray(function(first[:, None] * root))
+        return lambda function: np.asarray(function(first[:, None] * root))
     angle = (np.arange(size) + 0.5) * np.pi / size
     nodes = 0.5 * (low + high) + 0.5 * (high - low) * np.cos(angle)
-    table = np.asarray(function(nodes[:, None] * root))
     weights = np.cos(np.outer(np.arange(size), angle)) * (2.0 / size)
     weights[0] *= 0.5
-    series = weights @ table
     place = np.clip((2 * first - low - high) / (high - low), -1.0, 1.0)
-    basis = np.cos(np.outer(np.arccos(place), np.arange(size)))
-    out = np.empty((first.size, count + 1), dtype=complex)
-    out.real = basis @ series.real
-    out.imag = basis @ series.imag
-    return out
+    # Values at the nodes -> series -> values at the samples, as one matrix: the same for every factor.
+    basis = _chebyshev(place, size) @ weights
+
+    def interpolated(function: Callable[[NDArray[np.float64]], Any]) -> NDArray[np.complex128]:
+        table = np.asarray(function(nodes[:, None] * root))
+        out = np.empty((first.size, count + 1), dtype=complex)
+        out.real = basis @ table.real
+        out.imag = basis @ table.imag
+        return out
+
+    return interpolated
+
+
+def _chebyshev(place: NDArray[np.float64], size: int) -> NDArray[np.float64]:
+    """T_0 to T_(size - 1) at places in -1..1, by their recurrence, shape (S, size)."""
+    out = np.empty((max(size, 2), place.size))
+    out[0], out[1] = 1.0, place
+    for k in range(2, size):
+        np.multiply(2.0 * place, out[k - 1], out=out[k])
+        out[k] -= out[k - 2]
+    return out[:size].T
 
 
 def _basis(count: int, instants: int) -> NDArray[np.float64]:
@@ -120,16 +134,18 @@ def _mean_absolute(values: NDArray[np.float64]) -> NDArray[np.float64]:
 
 def _band(values: NDArray[np.float64]) -> tuple[NDArray[np.float64], NDArray[np.float64]]:
     """Central 95 % of each instant, by one partition of each column."""
-    columns = np.ascontiguousarray(values.T)
-    size = columns.shape[1]
+    size, instants = values.shape
     ranks = [level * (size - 1) for level in _LEVELS]
     wanted = sorted({k for rank in ranks for k in (int(rank), min(int(rank) + 1, size - 1))})
-    columns.partition(wanted, axis=1)
-    ends = []
-    for rank in ranks:
-        k = int(rank)
-        upper = min(k + 1, size - 1)
-        ends.append(columns[:, k] + (rank - k) * (columns[:, upper] - columns[:, k]))
+    ends = np.empty((2, instants))
+    # A few instants at a time, so that turning samples into rows stays in the cache.
+    for start in range(0, instants, _TURNED):
+        columns = np.ascontiguousarray(values[:, start : start + _TURNED].T)
+        columns.partition(wanted, axis=1)
+        for end, rank in zip(ends, ranks, strict=True):
+            k = int(rank)
+            upper = min(k + 1, size - 1)
+            end[start : start + _TURNED] = columns[:, k] + (rank - k) * (columns[:, upper] - columns[:, k])
     return ends[0], ends[1]
 
 
@@ -185,12 +201,15 @@ def propagate(
     """
     size = coefficients.shape[1]
     if instants < 4 * (size - 1):
-        raise InputError(f"instants = {instants} is too few for {size - 1} harmonics; at least {4 * (size - 1)}", name="instants", value=instants)
+        raise InputError(
+            f"instants = {instants} is too few for {size - 1} harmonics; at least {4 * (size - 1)}", name="instants", value=instants
+        )
     count = size - 1
     first = radius * np.sqrt(angular_frequency * density / viscosity)
-    shear = _factor(shear_factor, first, count)
+    factors = _factors(first, count)
+    shear = factors(shear_factor)
     square = first[:, None] ** 2 * np.arange(count + 1.0)
-    axis = _factor(centreline_ratio, first, count)
+    axis = factors(centreline_ratio)
     area = np.pi * radius**2
     per_velocity = {
         "flow_rate": area[:, None],
@@ -233,7 +252,7 @@ def propagate(
     if bands:
         spread["centreline_velocity"] = _band(values)
     if peak_place > 0:
-        beside = velocity * _factor(lambda a: velocity_profile(a, peak_place), first, count)
+        beside = velocity * factors(lambda a: velocity_profile(a, peak_place))
         values = _curve(beside, basis)
         peak = np.maximum(peak, np.maximum(-_extreme(values, beside, -1.0)[0], _extreme(values, beside, 1.0)[0]))
 
