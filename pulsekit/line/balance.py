@@ -14,8 +14,10 @@ _INSTANTS = 512
 
 
 def _course(mean: Any, flow: NDArray[np.complex128], instants: int) -> tuple[NDArray[np.float64], NDArray[np.float64]]:
-    turn = np.exp(2j * np.pi * np.outer(np.arange(1, flow.shape[-1] + 1), np.arange(instants)) / instants)
-    swing = np.real(flow @ turn)
+    size = max(instants, int(2 ** np.ceil(np.log2(16 * flow.shape[-1]))))
+    spectrum = np.zeros((*flow.shape[:-1], size // 2 + 1), dtype=complex)
+    spectrum[..., 1 : flow.shape[-1] + 1] = flow * (size / 2)
+    swing = np.fft.irfft(spectrum, n=size, axis=-1)
     return np.asarray(mean)[..., None] + swing, swing
 
 

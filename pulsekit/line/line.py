@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, field, replace
+from functools import cached_property
 from typing import Any
 
 import numpy as np
@@ -114,7 +115,7 @@ class Line:
         """Length of the main line [m]."""
         return float(sum(element.length for element in self.elements))
 
-    @property
+    @cached_property
     def starts(self) -> NDArray[np.float64]:
         """Position of the upstream side of each element, and the end, shape (elements + 1,). [m]"""
         return np.concatenate([[0.0], np.cumsum([element.length for element in self.elements])])
