@@ -92,7 +92,10 @@ def _basis(count: int, instants: int) -> NDArray[np.float64]:
 
 
 def _curve(coefficients: NDArray[np.complex128], basis: NDArray[np.float64]) -> NDArray[np.float64]:
-    return np.concatenate([coefficients.real, coefficients.imag], axis=1) @ basis
+    """Values (S, K); rows stand a little apart, since a stride of a power of two makes turning them slow."""
+    instants = basis.shape[1]
+    values = np.empty((coefficients.shape[0], instants + 8))[:, :instants]
+    return np.matmul(np.concatenate([coefficients.real, coefficients.imag], axis=1), basis, out=values)
 
 
 def _extreme(
