@@ -44,20 +44,25 @@ def place_of(line: Line, position: float) -> tuple[int, float]:
     InputError
         If the position lies outside the line.
     """
+    places, distances = places_of(line, np.array([position], dtype=float))
+    return int(places[0]), float(distances[0])
+
+
+def places_of(line: Line, positions: NDArray[np.float64]) -> tuple[NDArray[np.int_], NDArray[np.float64]]:
+    """The same for many positions, shape (P,)."""
     starts = line.starts
-    if not -1e-9 <= position <= starts[-1] * (1 + 1e-9) + 1e-9:
+    outside = ~((positions >= -1e-9) & (positions <= starts[-1] * (1 + 1e-9) + 1e-9))
+    if np.any(outside):
+        position = float(positions[outside][0])
         raise InputError(
             f"position = {position:.6g} m lies outside the line of 0 to {starts[-1]:.6g} m",
-            name="position",
-            value=position,
-            allowed=f"0 to {starts[-1]:.6g} m",
-        )
-    for place, element in enumerate(line.elements):
-        if position <= starts[place] + 1e-12:
-            return place, 0.0
-        if position < starts[place + 1] and element.length > 0:
-            return place, position - starts[place]
-    return len(line.elements), 0.0
+            name="position", value=position, allowed=f"0 to {starts[-1]:.6g} m",
+        )  # fmt: skip
+    # The first of the elements that begin at or behind the position; where it lies before that one's start, inside the pipe before.
+    behind = np.minimum(np.searchsorted(starts + 1e-12, positions, side="left"), len(line.elements))
+    inside = (behind > 0) & (positions < starts[behind])
+    places = np.where(inside, behind - 1, behind)
+    return places, np.where(inside, positions - starts[places], 0.0)
 
 
 def along(
@@ -71,12 +76,12 @@ def along(
 ) -> tuple[NDArray[np.complex128], NDArray[np.complex128]]:
     """Pressure and flow at positions, the position axis first."""
     media = line.media(medium, values)
-    spots = [place_of(line, float(position)) for position in positions]
+    places, offsets = places_of(line, np.array([float(position) for position in positions]))
     shape = np.broadcast_shapes(*(np.shape(number) for state in states for number in state))
-    pressures, flows = np.empty((len(spots), *shape), complex), np.empty((len(spots), *shape), complex)
-    for place in {place for place, _ in spots}:
-        rows = [row for row, (found, _) in enumerate(spots) if found == place]
-        distances = np.array([spots[row][1] for row in rows])
+    pressures, flows = np.empty((places.size, *shape), complex), np.empty((places.size, *shape), complex)
+    for place in np.unique(places):
+        rows = np.flatnonzero(places == place)
+        distances = offsets[rows]
         if place == len(line.elements) or not distances.any():
             pressures[rows], flows[rows] = states[place]
             continue
