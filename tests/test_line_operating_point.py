@@ -85,3 +85,15 @@ def test_both_sides_of_a_double_acting_plunger_compress():
     flow = pk.plunger_pump(plungers=1, speed="300 rpm", mean_flow="20 L/min", rod_ratio=1e4, acting="double", compression=0.2)
     odd, even = np.abs(flow.coefficients[1::2]), np.abs(flow.coefficients[2::2])
     assert odd.max() < 2e-3 * even.max()  # a long rod leaves 1/rod_ratio and a sample of the grid
+
+
+def test_a_restrictor_in_a_branch_damps_the_speed_map_as_it_damps_the_response():
+    branch = pk.SideBranch([pk.Restrictor(pressure_drop="10 bar", flow="1 L/min"), pk.Volume(volume="1 L")], end=pk.ClosedEnd())
+    line = pk.Line([pipe(), branch, pipe()], end=pk.ClosedEnd(), fluid=FLUID)
+    response = line.respond(source(5e-5))
+    places = np.linspace(0.0, line.length, 9)
+    mapped = speed_map(line, source(5e-5), [30.0], places, values=response.values).peak_to_peak[0]
+    # One harmonic: 32 instants miss its extreme by at most (pi/32)^2/2 = 0.5 %.
+    assert mapped == pytest.approx(response.envelope(places), rel=0.01)
+    undamped = speed_map(line, source(5e-5), [30.0], places).peak_to_peak[0]
+    assert abs(undamped[0] / mapped[0] - 1) > 0.05

@@ -108,7 +108,7 @@ def _over_speed(case: Case, solved: SolvedLine, numbers: dict[str, Any], extras:
     if not isinstance(source, FlowSource) or solved.speed is None:
         return
     speeds = solved.speed * np.linspace(0.9, 1.1, 41)
-    near = speed_map(solved.line, source, speeds, solved.positions)
+    near = speed_map(solved.line, source, speeds, solved.positions, values=solved.response.values)
     swing = near.peak_to_peak.max(axis=1)
     numbers["worst_peak_to_peak_within_10_percent"] = float(swing.max())
     numbers["worst_speed_within_10_percent"] = float(speeds[swing.argmax()])
@@ -119,7 +119,10 @@ def _over_speed(case: Case, solved: SolvedLine, numbers: dict[str, Any], extras:
         low, high = sorted(parse_given(entry, "frequency", "operation.speed_range").value for entry in stated)
         speeds = np.linspace(low, high, 161)
         spread = _wave_speed_spread(solved)
-        maps = [speed_map(solved.line, source, speeds, solved.positions, wave_speed_factor=factor) for factor in (1 - spread, 1.0, 1 + spread)]
+        maps = [
+            speed_map(solved.line, source, speeds, solved.positions, wave_speed_factor=factor, values=solved.response.values)
+            for factor in (1 - spread, 1.0, 1 + spread)
+        ]
         swing = np.max([found.peak_to_peak.max(axis=1) for found in maps], axis=0)
         numbers["worst_peak_to_peak_in_speed_range"] = float(swing.max())
         numbers["worst_speed_in_range"] = float(speeds[swing.argmax()])
@@ -128,7 +131,7 @@ def _over_speed(case: Case, solved: SolvedLine, numbers: dict[str, Any], extras:
         extras["wave_speed_varied_by"] = spread
     else:
         wide = solved.speed * np.linspace(0.5, 1.5, 121)
-        extras["speed_map"] = speed_map(solved.line, source, wide, solved.positions)
+        extras["speed_map"] = speed_map(solved.line, source, wide, solved.positions, values=solved.response.values)
 
 
 def _wave_speed_spread(solved: SolvedLine) -> float:
