@@ -34,7 +34,9 @@ def test_slow_flow_has_poiseuilles_resistance_and_four_thirds_of_the_inertance()
     assert_allclose(1j * alpha**2 * laminar_friction_ratio(alpha), 8 + 4 / 3 * 1j * alpha**2, rtol=1e-8)
 
 
-@pytest.mark.parametrize(("alpha", "resistance", "inertance"), [(1, 1.000867, 1.3331022), (5, 1.322356, 1.2539617), (20, 3.927086, 1.0703553)])
+@pytest.mark.parametrize(
+    ("alpha", "resistance", "inertance"), [(1, 1.000867, 1.3331022), (5, 1.322356, 1.2539617), (20, 3.927086, 1.0703553)]
+)
 def test_resistance_and_inertance(alpha, resistance, inertance):
     # computed from Womersley's definition at high precision; printed to 7 digits
     impedance = 1j * alpha**2 * laminar_friction_ratio(alpha)
@@ -59,7 +61,9 @@ def test_zielkes_printed_exponents():
 def test_laminar_propagation():
     # computed: 46 mm^2/s, R = 10 mm, a = 1300 m/s, 100 Hz
     omega = 2 * np.pi * 100
-    gamma = propagation_constant(angular_frequency=omega, wave_speed=1300.0, friction_ratio=laminar_friction_ratio(0.01 * np.sqrt(omega / 46e-6)))
+    gamma = propagation_constant(
+        angular_frequency=omega, wave_speed=1300.0, friction_ratio=laminar_friction_ratio(0.01 * np.sqrt(omega / 46e-6))
+    )
     assert_allclose(gamma, 0.00960698 + 0.492563j, atol=5e-7)
 
 
@@ -74,9 +78,7 @@ def test_tethered_elastic_tube_at_the_thinnest_layer():
     assert_allclose(1 / np.sqrt(0.75) / np.sqrt(laminar_friction_ratio(1e6)).real, 1.154701, rtol=1.2e-6)
 
 
-@pytest.mark.parametrize(
-    ("modulus", "thickness", "speed"), [(207e9, 1 / 50, 1197.88), (120e9, 1 / 20, 1267.79), (3.3e9, 1 / 20, 392.07)]
-)
+@pytest.mark.parametrize(("modulus", "thickness", "speed"), [(207e9, 1 / 50, 1197.88), (120e9, 1 / 20, 1267.79), (3.3e9, 1 / 20, 392.07)])
 def test_korteweg(modulus, thickness, speed):
     # computed for water K = 2.19 GPa, 998.2 kg/m^3, c1 = 1 (moduli from memory); printed to 6 digits
     found = wave_speed_in_pipe(bulk_modulus=2.19e9, density=998.2, diameter=1.0, wall_thickness=thickness, young_modulus=modulus)
@@ -95,7 +97,10 @@ def test_oil_line_example():
 
 def test_anchorings_of_a_thin_wall():
     # E. B. Wylie, V. L. Streeter: 1 - nu^2, 1 - nu/2 (in the convention named), 1
-    factors = [wall_factor(diameter=1.0, wall_thickness=1e-12, poisson_ratio=0.3, anchoring=how) for how in ("throughout", "upstream", "expansion joints")]
+    factors = [
+        wall_factor(diameter=1.0, wall_thickness=1e-12, poisson_ratio=0.3, anchoring=how)
+        for how in ("throughout", "upstream", "expansion joints")
+    ]
     assert_allclose(factors, [0.91, 0.85, 1.0], rtol=1e-9)
 
 
@@ -113,13 +118,17 @@ def test_soft_walls():
 @pytest.mark.parametrize(("exponent", "speed"), [(1.0, 311.65), (1.4, 365.54)])
 def test_water_with_air(exponent, speed):
     # A. B. Wood; computed for 20 °C, 1 atm, void 0.001
-    found = mixture_speed(gas_fraction=1e-3, pressure=101325.0, bulk_modulus=2.1934e9, density=998.2072, gas_density=1.204, exponent=exponent)
+    found = mixture_speed(
+        gas_fraction=1e-3, pressure=101325.0, bulk_modulus=2.1934e9, density=998.2072, gas_density=1.204, exponent=exponent
+    )
     assert_allclose(found, speed, rtol=1e-3)
 
 
 def test_no_gas_leaves_the_liquid():
     assert_allclose(
-        mixture_speed(gas_fraction=0.0, pressure=1e5, bulk_modulus=2e9, density=1000.0), liquid_speed(bulk_modulus=2e9, density=1000.0), rtol=1e-14
+        mixture_speed(gas_fraction=0.0, pressure=1e5, bulk_modulus=2e9, density=1000.0),
+        liquid_speed(bulk_modulus=2e9, density=1000.0),
+        rtol=1e-14,
     )
 
 
@@ -146,7 +155,9 @@ def test_friction_factor_is_poiseuilles_and_close_to_blasius():
 
 
 def test_impedance_of_a_frictionless_line():
-    assert_allclose(characteristic_impedance(density=870.0, wave_speed=1300.0, area=2e-4, friction_ratio=1.0), 870 * 1300 / 2e-4, rtol=1e-14)
+    assert_allclose(
+        characteristic_impedance(density=870.0, wave_speed=1300.0, area=2e-4, friction_ratio=1.0), 870 * 1300 / 2e-4, rtol=1e-14
+    )
 
 
 def test_zero_frequency_is_refused():

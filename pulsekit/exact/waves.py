@@ -56,7 +56,13 @@ def wall_factor(*, diameter: ArrayLike, wall_thickness: ArrayLike, poisson_ratio
 
 
 def wave_speed_in_pipe(
-    *, bulk_modulus: ArrayLike, density: ArrayLike, diameter: ArrayLike, wall_thickness: ArrayLike, young_modulus: ArrayLike, factor: ArrayLike = 1.0
+    *,
+    bulk_modulus: ArrayLike,
+    density: ArrayLike,
+    diameter: ArrayLike,
+    wall_thickness: ArrayLike,
+    young_modulus: ArrayLike,
+    factor: ArrayLike = 1.0,
 ) -> Any:
     """Korteweg's wave speed, sqrt(K/rho)/sqrt(1 + c1 K D/(E e)). [m/s]
 
@@ -96,7 +102,13 @@ def bramwell_hill_speed(*, pressure_change: ArrayLike, relative_area_change: Arr
 
 
 def mixture_speed(
-    *, gas_fraction: ArrayLike, pressure: ArrayLike, bulk_modulus: ArrayLike, density: ArrayLike, gas_density: ArrayLike = 0.0, exponent: ArrayLike = 1.4
+    *,
+    gas_fraction: ArrayLike,
+    pressure: ArrayLike,
+    bulk_modulus: ArrayLike,
+    density: ArrayLike,
+    gas_density: ArrayLike = 0.0,
+    exponent: ArrayLike = 1.4,
 ) -> Any:
     """Speed of sound in a liquid with free gas of volume fraction ``gas_fraction`` at the absolute ``pressure``. [m/s]
 
@@ -141,7 +153,9 @@ def friction_factor(reynolds: ArrayLike, *, relative_roughness: ArrayLike = 0.0)
     return np.where(re < 2300.0, laminar, rough)[()]
 
 
-def turbulent_friction_ratio(*, alpha: ArrayLike, reynolds: ArrayLike, velocity: ArrayLike, radius: ArrayLike, angular_frequency: ArrayLike) -> Any:
+def turbulent_friction_ratio(
+    *, alpha: ArrayLike, reynolds: ArrayLike, velocity: ArrayLike, radius: ArrayLike, angular_frequency: ArrayLike
+) -> Any:
     """N of turbulent mean flow in a smooth pipe.
 
     N = 1 + (7/16) f U0/(R i omega) + 2/sqrt(i alpha^2 + B): quasi-steady friction of Blasius' law, linearised (exponent
