@@ -51,7 +51,7 @@ class PumpLineWorkbench(Screen):
     state: PumpLineState
 
     def __init__(self, source: str | Path | Case | None = None, *, folder: str | Path | None = None, **more: Any) -> None:
-        super().__init__(PumpLineState(source, folder=folder), **more)
+        super().__init__(PumpLineState(folder=folder), source, **more)
 
     def givens_now(self) -> list[dict[str, Any]]:
         """Groups of fields."""

@@ -29,10 +29,11 @@ def desk(tmp_path_factory: pytest.TempPathFactory, demo: Path) -> Path:
     home = tmp_path_factory.mktemp("desk")
     folder = home / "notebooks"
     folder.mkdir()
-    for name in ("forearm", "bench"):
+    for name in ("forearm", "bench", "supply"):
         shutil.copytree(demo / name, folder / name)
         shutil.copy(demo / f"{name}.toml", folder)
     write_notebook(folder / "case.ipynb", "from pulsekit.workbench import WallShearWorkbench\nWallShearWorkbench('forearm.toml')")
+    write_notebook(folder / "line.ipynb", "from pulsekit.workbench import PumpLineWorkbench\nPumpLineWorkbench('supply.toml')")
     write_notebook(folder / "empty.ipynb", "from pulsekit.workbench import WallShearWorkbench\nWallShearWorkbench()")
     return folder
 
@@ -58,7 +59,7 @@ def open_page(chromium_browser: Any) -> Iterator[Any]:
         page = chromium_browser.new_page(**({"viewport": {"width": 1440, "height": 900}} | options))
         page.on("console", lambda message: complaints.append(message.text) if message.type == "error" else None)
         page.on("pageerror", lambda problem: complaints.append(f"uncaught: {problem}"))
-        page.goto(address, wait_until="domcontentloaded")
+        page.goto(address, wait_until="domcontentloaded", timeout=120_000)
         pages.append(page)
         return page
 
