@@ -155,7 +155,8 @@ def test_a_volume_fraction_is_not_a_mass_fraction():
 def test_density_leads_back_to_the_mass_fraction(share, kelvin):
     density = glycerol_density(share, kelvin)
     found = glycerol_mass_fraction_from_density(density, kelvin)
-    assert glycerol_density(found, kelvin) == pytest.approx(density, rel=1e-12)
+    # Close to pure glycerol the correlation overshoots pure glycerol by about 1e-6, and such a density counts as pure.
+    assert glycerol_density(found, kelvin) == pytest.approx(density, rel=1e-12 if share < 0.95 else 3e-6)
     # Near pure glycerol the contraction has an infinite slope: several shares have the same density to rounding.
     assert found == pytest.approx(share, abs=1e-9 if share < 0.95 else 2e-2)
 

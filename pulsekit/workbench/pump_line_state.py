@@ -64,13 +64,14 @@ class PumpLineState(DeskState):
             return False
         self.refused.pop("station.0.file", None)
         old = [table for table in self.case.get("station") or [] if table.get("file") != name and table.get("position") is not None]
-        pressures = [column for column in recording.columns if recording.column(column).dimension == "pressure"]
+        channels = [column for column in recording.columns if column not in recording.time_names]
+        pressures = [column for column in channels if recording.column(column).dimension == "pressure"]
         tables = [{"name": column, "file": name, "column": column} for column in pressures]
         if not tables:
             self.notice = f"{Path(name).name} holds no column that is a pressure; its columns: {', '.join(recording.columns)}"
             return False
         case = self.case.with_value("station", [*old, *tables])
-        triggers = [column for column in recording.columns if "trig" in column.lower() or "tacho" in column.lower()]
+        triggers = [column for column in channels if "trig" in column.lower() or "tacho" in column.lower()]
         if triggers and case.get("recording.trigger") is None:
             case = case.with_value("recording.trigger", triggers[0])
         self.take(case)
@@ -161,9 +162,18 @@ class PumpLineState(DeskState):
         return self._helped_for is not None and self._helped_for == self.case
 
     def keep_change(self, name: str) -> bool:
-        """Make one of the changes part of the case; the case before it is pinned for comparison."""
+        """Make one of the changes part of the case; the case before it is pinned for comparison.
+
+        A pressure that was measured on the unchanged line cannot drive the changed one: that is said, and the case stays.
+        """
         try:
             solved = solve_line(self.case, self.workspace)
+            if solved.driven.model == "measured":
+                self.notice = (
+                    "The pressure was measured on the line as it is and cannot drive a changed one: choose a pump or a flow trace as the source to keep this "
+                    "change; its effect stands in the table, from the flow that was found at 0 m."
+                )
+                return False
             known = {str(change.get("name")): change for change in [*(self.case.get("change") or []), *usual_changes(self.case, solved)]}
             if name not in known:
                 self.notice = f"There is no change named {name!r} any more."
