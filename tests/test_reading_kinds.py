@@ -204,7 +204,7 @@ REFUSED = [
     Kind("two vessels, none chosen", f"Vessel: left\n{BLOCK}\nVessel: right\n{BLOCK}", refusal="'left', 'right'.*block='left'"),
     Kind("frames without times", "R-R;857 ms\n" + "\n".join(line for line in BLOCK.splitlines() if "Trigger" not in line), refusal="no row of times.*R-R is 0.857 s"),
     Kind("NUL bytes", PLAIN[:300].encode() + b"\0\0\0" + PLAIN[300:].encode(), refusal=r"run\.csv:\d+: there is a NUL byte"),
-    Kind("too many bad lines", HEAD + "".join(f"{line}\nsensor fault {i} {i}\n" for i, line in enumerate(rows().splitlines())), refusal="60 of 120 lines are no rows"),
+    Kind("too many bad lines", HEAD + "".join(f"{line}\nsensor fault {i} {i}\n" for i, line in enumerate(rows().splitlines())), refusal="59 of 119 lines are no rows"),
     Kind("nothing but text", "one morning\nthe pump was started\n" * 30, refusal="no table of numbers"),
     Kind("empty", "", refusal="empty"),
     Kind("one row", HEAD + "0.0,1.0\n", refusal="one row"),

@@ -135,11 +135,11 @@ def _try(lines: Sequence[str], delimiter: str, decimal: str | None) -> tuple[flo
 
 
 def _first_row(places: list[int], fits: list[bool]) -> int | None:
-    """First line from which the rows go on: it fits, and most of the next five do."""
+    """First line from which the rows go on: it fits, and of it and the next five at least half do."""
     for order, place in enumerate(places):
         if fits[place]:
             following = places[order : order + 6]
-            if sum(fits[other] for other in following) >= 0.6 * len(following):
+            if sum(fits[other] for other in following) >= 0.5 * len(following):
                 return place
     return None
 
